@@ -1,0 +1,1 @@
+"""Ground floor: wavelength grids, illuminants, observers, and the weights that fold them into one matrix."""
