@@ -1,0 +1,1 @@
+"""The colour of liquids, from spectrum to decision."""

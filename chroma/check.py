@@ -1,0 +1,194 @@
+"""Is this batch right: the verdict on each batch against a target."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from chroma.colour.spaces import Lab_from_XYZ
+from chroma.conditions import Conditions
+from chroma.decision import WORDS, decide, probability_within
+from chroma.difference.classic import components
+from chroma.difference.formulas import Formula
+from chroma.quantity import fraction
+from chroma.scatter import carried, coverage_factor, of_difference, of_distance, spread
+from chroma.spectra import Source, Spectra
+from chroma.tolerance import COMPONENTS, Tolerance
+from observers.arrays import Array, Codes
+from observers.errors import InputError
+
+BLOCK = 4096  # batches at a time, so that the intermediate arrays stay in the processor's cache
+
+
+@dataclass(frozen=True, eq=False)
+class Checked:
+    """Verdicts on N batches under L lamps.
+
+    delta_e (N, L). parts (N, L, 5): dL, da, db, dC, dH. expanded (N, L) and expanded_parts (N, L, 5): U of
+    ΔE and of its parts, or None where none is known.
+    within (N, L): probability that the difference lies within the limit, or None. verdicts (N, L): codes of
+    `chroma.decision`. Lab and XYZ100 of target (L, 3) and samples (N, L, 3); white100 (L, 3).
+    """
+
+    target: str
+    names: tuple[str, ...]
+    tolerance: Tolerance
+    conditions: Conditions
+    delta_e: Array
+    parts: Array
+    expanded: Array | None
+    expanded_parts: Array | None
+    within: Array | None
+    verdicts: Codes
+    target_XYZ100: Array
+    target_Lab: Array
+    XYZ100: Array
+    Lab: Array
+    white100: Array
+    sources: tuple[Source, ...]
+    notes: tuple[str, ...]
+
+    @property
+    def limits(self) -> Array:
+        """(L,) the limit under each lamp."""
+        return np.array([self.tolerance.limits[lamp.name] for lamp in self.conditions.illuminants])
+
+    @property
+    def worst(self) -> Codes:
+        """(N,) the verdict on each batch, the worst over its lamps."""
+        result: Codes = self.verdicts.max(axis=1)
+        return result
+
+    def counts(self) -> dict[str, int]:
+        """How many batches there are, and how many of each verdict."""
+        worst = self.worst
+        return {"batches": len(self.names)} | {
+            word: int(np.count_nonzero(worst == code)) for code, word in enumerate(WORDS)
+        }
+
+
+def check(batches: Spectra, target: Spectra, tolerance: Tolerance, conditions: Conditions) -> Checked:
+    """Verdicts on batches against a target of one sample, each on its own grid, under the lamps of the conditions.
+
+    Raises InputError when the target is not one sample, when one is transmittance and the other reflectance, when a
+    guard band is wanted and no uncertainty is known, or when a grid does not serve.
+    """
+    if len(target) != 1:
+        raise InputError(f"{len(target)} samples in the target", why="a batch is held to one", do="name it: FILE:NAME")
+    if not len(batches):
+        raise InputError("no batches to check", do="give a file with at least one sample")
+    wanted, shares = fraction(target), fraction(batches)
+    if wanted.quantity != shares.quantity:
+        raise InputError(
+            f"the target is {wanted.quantity}, the batches are {shares.quantity}", why="they cannot be compared"
+        )
+    W_target, W = conditions.weights(wanted.wavelength_nm), conditions.weights(shares.wavelength_nm)
+    target_XYZ100, XYZ100 = W_target.response(wanted.values), W.response(shares.values)
+    target_Lab, Lab = Lab_from_XYZ(target_XYZ100[0], W_target.white), Lab_from_XYZ(XYZ100, W.white)
+    delta_e, parts = differences(tolerance.formula, target_Lab, Lab)
+
+    limits = np.array([tolerance.limits[lamp.name] for lamp in conditions.illuminants])
+    covariance, freedom = of_difference(spread(wanted, target_XYZ100, W_target), spread(shares, XYZ100, W))
+    judging = Judging(tolerance, target_Lab, Lab, covariance, freedom)
+    u, u_parts, factor, note = judging.uncertainties()
+    guard = tolerance.rule == "guard-band"
+    verdicts = decide(delta_e, limits, factor * u if guard else 0.0)
+    verdicts = np.maximum(verdicts, one_sided(tolerance, parts, factor * u_parts if guard else np.zeros(parts.shape)))
+    known = factor > 0
+    return Checked(
+        target.names[0],
+        shares.names,
+        tolerance,
+        conditions,
+        delta_e,
+        parts,
+        factor * u if known else None,
+        factor * u_parts if known else None,
+        probability_within(delta_e, np.maximum(u, 1e-9), limits) if known else None,
+        verdicts,
+        target_XYZ100[0],
+        target_Lab,
+        XYZ100,
+        Lab,
+        W.white,
+        tuple(dict.fromkeys(wanted.sources + shares.sources)),
+        tuple(dict.fromkeys((*wanted.notes, *shares.notes, *W_target.notes, *W.notes, *note))),
+    )
+
+
+def differences(formula: Formula, target_Lab: Array, Lab: Array) -> tuple[Array, Array]:
+    """ΔE (N, L) and its parts (N, L, 5) of samples (N, L, 3) against the target (L, 3), block by block."""
+    delta_e, parts = np.empty(Lab.shape[:2]), np.empty((*Lab.shape[:2], 5))
+    for start in range(0, len(Lab), BLOCK):
+        rows = slice(start, start + BLOCK)
+        delta_e[rows] = formula.difference(target_Lab, Lab[rows])
+        parts[rows] = components(target_Lab, Lab[rows])
+    return delta_e, parts
+
+
+@dataclass(frozen=True, eq=False)
+class Judging:
+    """What is needed to say how sure each difference is."""
+
+    tolerance: Tolerance
+    target_Lab: Array
+    Lab: Array
+    covariance: Array
+    freedom: int
+
+    def uncertainties(self) -> tuple[Array, Array, float, tuple[str, ...]]:
+        """Standard uncertainty of ΔE (N, L) and of its parts (N, L, 5), the factor k, and what was done.
+
+        k is 0 where no uncertainty is known. A stated uncertainty goes before replicates.
+        """
+        shape = self.Lab.shape[:2]
+        k = self.tolerance.coverage
+        if self.tolerance.uncertainty is not None:
+            u = self.tolerance.uncertainty
+            note = f"U = {k:g} × {u:g}, stated for ΔE and each of its parts"
+            return np.full(shape, u), np.full((*shape, 5), u), k, (note,)
+        if self.freedom == 0:
+            if self.tolerance.rule == "guard-band":
+                raise InputError(
+                    "a guard band without an uncertainty",
+                    why="neither replicates nor a stated uncertainty are there",
+                    do="measure replicates (NAME#1, NAME#2), give --uncertainty, or take the rule simple",
+                )
+            return np.zeros(shape), np.zeros((*shape, 5)), 0.0, ()
+        return self._from_replicates(coverage_factor(k, self.freedom))
+
+    def _from_replicates(self, factor: float) -> tuple[Array, Array, float, tuple[str, ...]]:
+        u = of_distance(
+            lambda Lab: self.tolerance.formula.difference(self.target_Lab, Lab),
+            self.Lab,
+            self.covariance,
+            self.target_Lab,
+        )
+        u_parts = carried(lambda Lab: components(self.target_Lab, Lab), self.Lab, self.covariance)
+        note = (
+            f"U = {factor:.3g} × u, u from replicates pooled over all samples ({self.freedom} degrees of freedom, "
+            f"coverage {self.tolerance.coverage:g} of a Gaussian)"
+        )
+        return u, u_parts, factor, (note,)
+
+
+def one_sided(tolerance: Tolerance, parts: Array, expanded: Array) -> Codes:
+    """(N, L) codes of the signed limits alone; all pass where there are none."""
+    worst = np.zeros(parts.shape[:2], dtype=np.int8)
+    for key, limit in tolerance.one_sided.items():
+        name, end = key.split("_")
+        sign = 1.0 if end == "max" else -1.0
+        which = COMPONENTS.index(name)
+        worst = np.maximum(worst, decide(sign * parts[..., which], sign * limit, expanded[..., which]))
+    return worst
+
+
+def part_under_limit(checked: Checked, key: str, row: int, lamp: int) -> tuple[float, float, int]:
+    """One signed part under its one-sided limit (as ``dL_min``): its value, its U under a guard band, its code."""
+    which = COMPONENTS.index(key.split("_")[0])
+    value = float(checked.parts[row, lamp, which])
+    guard = checked.tolerance.rule == "guard-band" and checked.expanded_parts is not None
+    U = float(checked.expanded_parts[row, lamp, which]) if guard and checked.expanded_parts is not None else 0.0
+    sign = 1.0 if key.endswith("max") else -1.0
+    return value, U, int(decide(np.asarray(sign * value), sign * checked.tolerance.one_sided[key], U))

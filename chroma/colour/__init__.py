@@ -1,0 +1,1 @@
+"""Colour spaces and what follows from tristimulus values alone."""

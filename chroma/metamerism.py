@@ -1,0 +1,50 @@
+"""Metamerism: how a match that holds under one lamp goes apart under another."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from chroma.check import Checked
+from chroma.colour.spaces import Lab_from_XYZ
+from chroma.difference.classic import cie1976
+from observers.arrays import Array
+
+
+def special_index(
+    target_ref: Array, target_test: Array, sample_ref: Array, sample_test: Array, white_test: Array
+) -> Array:
+    """CIE special index of metamerism, change of illuminant (…): ΔE*ab under the test lamp after correction.
+
+    The four are XYZ100 (…, 3). What the pair differs by under the reference lamp is first taken out by multiplying the
+    sample's tristimulus values (CIE 15:2018, 9.2; CIE Publ. 15 names the multiplicative correction).
+    """
+    corrected = sample_test * target_ref / sample_ref
+    return cie1976(Lab_from_XYZ(target_test, white_test), Lab_from_XYZ(corrected, white_test))
+
+
+def change(checked: Checked) -> Array:
+    """(N, L - 1) ΔE under each further lamp minus ΔE under the first."""
+    result: Array = checked.delta_e[:, 1:] - checked.delta_e[:, :1]
+    return result
+
+
+def special_indices(checked: Checked) -> Array:
+    """(N, L - 1) special index of each further lamp against the first; NaN where the pair does not qualify.
+
+    A pair qualifies when it matches under the first lamp: when its difference there lies within the limit.
+    """
+    lamps = range(1, len(checked.limits))
+    index = [
+        special_index(
+            checked.target_XYZ100[0],
+            checked.target_XYZ100[i],
+            checked.XYZ100[:, 0],
+            checked.XYZ100[:, i],
+            checked.white100[i],
+        )
+        for i in lamps
+    ]
+    if not index:
+        return np.empty((len(checked.names), 0))
+    matched = checked.delta_e[:, :1] <= checked.limits[0]
+    return np.where(matched, np.stack(index, axis=-1), np.nan)
