@@ -1,0 +1,1 @@
+"""Dyes: what they absorb, how that was found, and what their solutions look like."""
