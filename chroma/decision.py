@@ -18,6 +18,9 @@ RULES: tuple[Rule, ...] = get_args(Rule)
 PASS, UNDECIDED, FAIL = 0, 1, 2
 WORDS = ("pass", "undecided", "fail")
 
+FAR = 1e3  # a difference this many standard deviations from zero is Gaussian to a thousandth of one
+LARGEST = 1e6  # a squared limit this many variances out holds everything
+
 
 def decide(value: Array, limit: Array | float, expanded: Array | float) -> Codes:
     """Verdict codes (…) for a value held under a limit: pass when value + U ≤ limit, fail when value - U > limit.
@@ -51,7 +54,11 @@ def probability_within(difference: Array, sd: Array, limit: Array) -> Array:
     A difference is a length and cannot be negative, so near zero a Gaussian is wrong: the square of the length over sd
     follows the noncentral chi-square distribution with three degrees of freedom.
     """
-    from scipy.special import chndtr
+    from scipy.special import chndtr, ndtr
 
-    result: Array = chndtr((limit / sd) ** 2, 3, (difference / sd) ** 2)
+    # Far from zero, in units of sd, only the axis along the difference counts, and the series of chndtr fails.
+    far = difference > FAR * sd
+    safe_sd, safe = np.where(far, 1.0, sd), np.where(far, 0.0, difference)
+    near_zero = chndtr(np.minimum((limit / safe_sd) ** 2, LARGEST), 3, (safe / safe_sd) ** 2)
+    result: Array = np.where(far, ndtr((limit - difference) / sd), near_zero)
     return result

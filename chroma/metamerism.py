@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from chroma.check import Checked
+from chroma.batches import Checked
 from chroma.colour.spaces import Lab_from_XYZ
 from chroma.difference.classic import cie1976
 from observers.arrays import Array

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from chroma.check import Checked
+from chroma.batches import Checked
 from chroma.colour.spaces import Lab_from_LCh, LCh_from_Lab
 from chroma.difference.formulas import Formula
 from observers.arrays import Array

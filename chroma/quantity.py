@@ -6,7 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from chroma.spectra import Quantity, Scatter, Spectra, judge
+from chroma.spectra import Quantity, Scatter, Spectra, judge, stem
 from observers.arrays import Array
 from observers.errors import InputError
 
@@ -65,11 +65,12 @@ def corrected(spectra: Spectra, *, blank: str | None = None, dark: str | None = 
             why="a dark reading is taken off both sample and blank",
             do="name the blank with --blank",
         )
-    rows = [i for i, name in enumerate(spectra.names) if name not in (blank, dark)]
+    stems = [stem(name) for name in spectra.names]
+    rows = [i for i, name in enumerate(stems) if name not in (blank, dark)]
     if not rows:
         raise InputError("nothing is left but blank and dark", do="give the samples too")
-    B = spectra.values[spectra.row(blank)]
-    D = spectra.values[spectra.row(dark)] if dark is not None else np.zeros_like(B)
+    B = _mean(spectra, stems, blank)
+    D = _mean(spectra, stems, dark) if dark is not None else np.zeros_like(B)
     samples = spectra.take(rows)
     if spectra.quantity == "absorbance":
         if dark is not None:
@@ -106,6 +107,14 @@ def at_path_length(spectra: Spectra, from_mm: float, to_mm: float) -> Spectra:
     return replace(_with(spectra, base**ratio, "transmittance", slope), path_length_mm=to_mm).noted(
         f"path length {from_mm:g} mm rescaled to {to_mm:g} mm"
     )
+
+
+def _mean(spectra: Spectra, stems: list[str], name: str) -> Array:
+    """The mean of all readings of one name."""
+    if name not in stems:
+        spectra.row(name)  # refuses it, and lists what there is
+    result: Array = spectra.values[[i for i, own in enumerate(stems) if own == name]].mean(axis=0)
+    return result
 
 
 def _with(spectra: Spectra, values: Array, quantity: Quantity, slope: Array) -> Spectra:

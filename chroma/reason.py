@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from chroma.check import Checked, part_under_limit
+from chroma.batches import Checked, part_under_limit
 from chroma.decision import FAIL, PASS, WORDS, decide
 
 

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from chroma.predict import Lab_deviations
+from chroma.colours import Lab_deviations
 from chroma.spectra import Spectra
 from observers.arrays import Array
 from observers.weights import Weights

@@ -9,7 +9,7 @@ from typing import Literal, get_args
 
 import numpy as np
 
-from observers.arrays import Array, Index, frozen
+from observers.arrays import Array, Index, Mask, frozen
 from observers.errors import InputError
 
 Quantity = Literal["transmittance", "reflectance", "absorbance", "counts"]
@@ -19,6 +19,7 @@ QUANTITIES: tuple[Quantity, ...] = get_args(Quantity)
 # (interfacial gain against the blank), and noise a little below 0.
 LARGEST_FRACTION = 1.2
 SMALLEST_FRACTION = -0.02
+VISIBLE_NM = (380.0, 780.0)
 ABSORBANCE_LIMIT = 3.0  # common practice: stray light bends most bench instruments above this
 
 
@@ -127,41 +128,27 @@ def measured(
 def judge(spectra: Spectra, *, absorbance_limit: float = ABSORBANCE_LIMIT) -> tuple[str, ...]:
     """Hold values against what the quantity can be; returns notes, raises InputError.
 
-    Refused: a fraction above 1.2 or below -0.02 (for absorbance: the same, as transmittance), negative counts.
-    Noted: fractions a little below 0, absorbance above the limit of the instrument.
+    Refused: a fraction above 1.2 or below -0.02 (for absorbance: the same, as transmittance) within 380–780 nm;
+    negative counts. Noted: such fractions outside 380–780 nm, where lamps and solvents often leave an instrument blind;
+    fractions a little below 0; absorbance above the limit of the instrument.
     """
     values, quantity = spectra.values, spectra.quantity
-    if not values.size:
-        return ()
     if quantity == "counts":
         _refuse(spectra, values < 0, "counts cannot be negative", "take the dark reading off with --dark instead")
         return ()
     if quantity == "absorbance":
         lowest = -np.log10(LARGEST_FRACTION)
-        _refuse(
-            spectra,
-            values < lowest,
-            f"an absorbance below {lowest:.2f} means more light behind the sample than behind the blank",
-            "check the blank, or give --quantity",
-        )
-        return _note_where(
-            spectra,
-            values > absorbance_limit,
-            f"above the absorbance of {absorbance_limit:g} that the instrument can tell; kept as measured",
-        )
-    _refuse(
-        spectra,
-        values > LARGEST_FRACTION,
-        f"a {quantity} above {LARGEST_FRACTION:g} is not a fraction",
-        "check the blank or white, or say what the numbers are with --quantity",
-    )
-    _refuse(
-        spectra,
-        values < SMALLEST_FRACTION,
-        f"a {quantity} below {SMALLEST_FRACTION:g} is more than noise about zero",
-        "check the dark reading, or give --quantity",
-    )
-    return _note_where(spectra, values < 0, "below zero, taken as noise and kept")
+        why = f"an absorbance below {lowest:.2f} means more light behind the sample than behind the blank"
+        beyond = _refuse_visible(spectra, values < lowest, why, "check the blank, or give --quantity")
+        much = f"above the absorbance of {absorbance_limit:g} that the instrument can tell; kept as measured"
+        return beyond + _note_where(spectra, values > absorbance_limit, much)
+    why = f"a {quantity} above {LARGEST_FRACTION:g} is not a fraction"
+    do = "check the blank or white, or say what the numbers are with --quantity"
+    beyond = _refuse_visible(spectra, values > LARGEST_FRACTION, why, do)
+    why = f"a {quantity} below {SMALLEST_FRACTION:g} is more than noise about zero"
+    beyond += _refuse_visible(spectra, values < SMALLEST_FRACTION, why, "check the dark reading, or give --quantity")
+    small = (values < 0) & (values >= SMALLEST_FRACTION)
+    return beyond + _note_where(spectra, small, "below zero, taken as noise and kept")
 
 
 def averaged(spectra: Spectra) -> Spectra:
@@ -169,7 +156,7 @@ def averaged(spectra: Spectra) -> Spectra:
 
     They are averaged in the quantity that was measured, and their deviations kept as `Scatter`.
     """
-    stems = [re.sub(r"#\d+$", "", name) for name in spectra.names]
+    stems = [stem(name) for name in spectra.names]
     place: dict[str, int] = {}
     row = np.array([place.setdefault(stem, len(place)) for stem in stems], dtype=np.intp)
     if len(place) == len(stems):
@@ -182,6 +169,11 @@ def averaged(spectra: Spectra) -> Spectra:
     scatter = Scatter(row[repeated], frozen(spectra.values[repeated] - means[row[repeated]]))
     most = f"replicates averaged: {len(stems)} readings of {len(place)} samples"
     return replace(spectra, names=tuple(place), values=means, scatter=scatter).noted(most)
+
+
+def stem(name: str) -> str:
+    """The sample that a reading is of: its name without ``#1``, ``#2``."""
+    return re.sub(r"#\d+$", "", name)
 
 
 def standard_uncertainty(spectra: Spectra) -> Array:
@@ -283,7 +275,7 @@ def _check_finite(names: tuple[str, ...], wavelength_nm: Array, values: Array) -
         )
 
 
-def _refuse(spectra: Spectra, bad: np.ndarray, why: str, do: str) -> None:
+def _refuse(spectra: Spectra, bad: Mask, why: str, do: str) -> None:
     if bad.any():
         row, band = np.argwhere(bad)[0]
         raise InputError(
@@ -294,7 +286,16 @@ def _refuse(spectra: Spectra, bad: np.ndarray, why: str, do: str) -> None:
         )
 
 
-def _note_where(spectra: Spectra, odd: np.ndarray, text: str) -> tuple[str, ...]:
+def _refuse_visible(spectra: Spectra, bad: Mask, why: str, do: str) -> tuple[str, ...]:
+    """Refuse what no instrument can have meant where eyes see; note it elsewhere."""
+    if not bad.any():
+        return ()
+    visible = (spectra.wavelength_nm >= VISIBLE_NM[0]) & (spectra.wavelength_nm <= VISIBLE_NM[1])
+    _refuse(spectra, bad & visible, why, do)
+    return _note_where(spectra, bad, f"that cannot be, outside 380–780 nm; kept as measured ({why})")
+
+
+def _note_where(spectra: Spectra, odd: Mask, text: str) -> tuple[str, ...]:
     if not odd.any():
         return ()
     rows, bands = np.flatnonzero(odd.any(axis=1)), np.flatnonzero(odd.any(axis=0))

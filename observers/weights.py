@@ -123,13 +123,17 @@ def _cie_fold(wavelength_nm: Array) -> Array:
 
 
 def _fine_fold(wavelength_nm: Array) -> Array:
-    """Trapezoid means of a fine spectrum over each 1 nm step, as a matrix."""
-    edges = np.clip(np.arange(359.5, 831.0), wavelength_nm[0], wavelength_nm[-1])
-    width = np.gradient(wavelength_nm)
+    """Means over each 1 nm step of the straight lines between the points of a fine spectrum, as a matrix."""
+    edges = np.arange(STANDARD_NM[0] - 0.5, STANDARD_NM[-1] + 1.0)
+    inner = edges[(edges > wavelength_nm[0]) & (edges < wavelength_nm[-1])]
+    cuts = np.union1d(wavelength_nm, inner)
+    cuts = cuts[(cuts >= edges[0]) & (cuts <= edges[-1])]
+    middle, width = (cuts[1:] + cuts[:-1]) / 2, np.diff(cuts)
+    step, interval = np.searchsorted(edges, middle) - 1, np.searchsorted(wavelength_nm, middle) - 1
+    passed = (middle - wavelength_nm[interval]) / np.diff(wavelength_nm)[interval]
     share = np.zeros((len(STANDARD_NM), len(wavelength_nm)))
-    step = np.clip(np.searchsorted(edges, wavelength_nm, side="right") - 1, 0, len(STANDARD_NM) - 1)
-    within = (wavelength_nm >= 359.5) & (wavelength_nm < 830.5)
-    share[step[within], np.flatnonzero(within)] = width[within]
+    np.add.at(share, (step, interval), width * (1 - passed))
+    np.add.at(share, (step, interval + 1), width * passed)
     total = share.sum(axis=1, keepdims=True)
     empty = total[:, 0] == 0
     share[~empty] /= total[~empty]

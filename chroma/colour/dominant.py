@@ -9,6 +9,7 @@ import numpy as np
 from observers.arrays import Array
 from observers.human import Observer
 
+ON_CORNER = 1e-9  # a ray through a corner of the locus meets one of its two sides, whatever rounding says
 NEUTRAL = 1e-6  # a chromaticity this close to the white has no direction, so no dominant wavelength
 
 
@@ -68,7 +69,7 @@ def _meeting(start: Array, step: Array, path: Array) -> tuple[int, float, float]
     with np.errstate(divide="ignore", invalid="ignore"):
         times = (offset[:, 0] * along[:, 1] - offset[:, 1] * along[:, 0]) / cross
         share = (offset[:, 0] * step[1] - offset[:, 1] * step[0]) / cross
-    hit = np.flatnonzero((times > 0) & (share >= 0) & (share <= 1))
+    hit = np.flatnonzero((times > 0) & (share >= -ON_CORNER) & (share <= 1 + ON_CORNER))
     if not len(hit):
         return None
     best = hit[np.argmax(times[hit])]

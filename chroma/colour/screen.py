@@ -95,3 +95,18 @@ def _rgb_at(LCh: Array, share: Array) -> Array:
     scaled = LCh * np.stack([np.ones_like(share), share, np.ones_like(share)], axis=-1)
     result: Array = XYZ_from_Lab(Lab_from_LCh(scaled), SRGB_WHITE100) @ RGB_FROM_XYZ.T / 100
     return result
+
+
+def spectrum_rgb(wavelength_nm: Array) -> Array:
+    """(B, 3) codes 0–1 that hint at the colour of each wavelength on a screen; black outside what eyes see.
+
+    No screen shows a spectral colour; what the screen lacks is cut off, and the brightness follows the responsivity of
+    the 2° observer, lifted so that the ends stay visible.
+    """
+    from observers.human import observer, responsivity_at
+
+    XYZ = responsivity_at(observer("2"), wavelength_nm)
+    linear = np.maximum(XYZ @ RGB_FROM_XYZ.T, 0)
+    peak = np.maximum(linear.max(axis=1, keepdims=True), 1e-12)
+    strength = np.minimum(XYZ.sum(axis=1, keepdims=True) / 0.25, 1) ** 0.5
+    return encoded(linear / peak * strength)

@@ -30,6 +30,17 @@ def Lab_from_XYZ(XYZ100: Array, white100: Array) -> Array:
     return np.stack([116 * fy - 16, 500 * (fx - fy), 200 * (fy - fz)], axis=-1)
 
 
+def Lab_jacobian(XYZ100: Array, white100: Array) -> Array:
+    """(…, 3, 3) slopes of L*, a*, b* against X, Y, Z."""
+    ratio = XYZ100 / white100
+    slope = np.where(ratio > DELTA**3, 1 / (3 * np.cbrt(np.maximum(ratio, DELTA**3)) ** 2), SLOPE) / white100
+    result = np.zeros((*slope.shape, 3))
+    result[..., 0, 1] = 116 * slope[..., 1]
+    result[..., 1, 0], result[..., 1, 1] = 500 * slope[..., 0], -500 * slope[..., 1]
+    result[..., 2, 1], result[..., 2, 2] = 200 * slope[..., 1], -200 * slope[..., 2]
+    return result
+
+
 def XYZ_from_Lab(Lab: Array, white100: Array) -> Array:
     """Tristimulus values of L*, a*, b*; the inverse of `Lab_from_XYZ`."""
     fy = (Lab[..., 0] + 16) / 116
@@ -42,7 +53,8 @@ def XYZ_from_Lab(Lab: Array, white100: Array) -> Array:
 def LCh_from_Lab(Lab: Array) -> Array:
     """L*, C*ab and the hue angle h_ab in degrees, 0 to 360; the hue of a grey is 0."""
     L, a, b = Lab[..., 0], Lab[..., 1], Lab[..., 2]
-    return np.stack([L, np.hypot(a, b), np.degrees(np.arctan2(b, a)) % 360], axis=-1)
+    # A hue a rounding error below 0 comes out of the remainder as 360 itself, hence the second one.
+    return np.stack([L, np.hypot(a, b), np.degrees(np.arctan2(b, a)) % 360 % 360], axis=-1)
 
 
 def Lab_from_LCh(LCh: Array) -> Array:

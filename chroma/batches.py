@@ -7,7 +7,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from chroma.colour.spaces import Lab_from_XYZ
-from chroma.conditions import Conditions
 from chroma.decision import WORDS, decide, probability_within
 from chroma.difference.classic import components
 from chroma.difference.formulas import Formula
@@ -15,6 +14,7 @@ from chroma.quantity import fraction
 from chroma.scatter import carried, coverage_factor, of_difference, of_distance, spread
 from chroma.spectra import Source, Spectra
 from chroma.tolerance import COMPONENTS, Tolerance
+from chroma.viewing import Conditions
 from observers.arrays import Array, Codes
 from observers.errors import InputError
 

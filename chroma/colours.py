@@ -9,9 +9,9 @@ import numpy as np
 from chroma.colour.dominant import Dominant, dominant
 from chroma.colour.screen import hex_codes, in_gamut, linear_rgb, nearest_linear_rgb
 from chroma.colour.spaces import Lab_from_XYZ, LCh_from_Lab, Luv_from_XYZ, xyY_from_XYZ
-from chroma.conditions import Conditions
 from chroma.quantity import fraction
 from chroma.spectra import Source, Spectra
+from chroma.viewing import Conditions
 from observers.arrays import Array, Mask
 from observers.weights import Weights
 

@@ -1,0 +1,4 @@
+"""The version of the program, in one place."""
+
+__version__ = "0.1.0"
+PROGRAM = f"lamplit {__version__}"
