@@ -70,6 +70,23 @@ class Dye:
         return result
 
     @property
+    def half_width95(self) -> Array:
+        """(B,) half of the 95 % interval of the absorptivity.
+
+        The factor is Student's t at the effective degrees of freedom of Welch and Satterthwaite (JCGM 100, G.4): the
+        noise is known from many bands, the common errors from as many numbers as there are standards.
+        """
+        from scipy.special import ndtri, stdtrit
+
+        u, shared = self.standard_uncertainty, (self.common**2).sum(axis=0)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            freedom = np.where(shared > 0, u**4 / shared**2 * self.freedom, np.inf)
+        many = ~(freedom < 1e6)
+        factor = np.where(many, ndtri(0.975), stdtrit(np.where(many, 1e6, freedom), 0.975))
+        result: Array = factor * u
+        return result
+
+    @property
     def peak(self) -> int:
         """The band of the largest absorptivity within 380–780 nm, or anywhere when the table has none there."""
         visible = (self.wavelength_nm >= 380) & (self.wavelength_nm <= 780)

@@ -1,0 +1,96 @@
+"""From words on the command line to spectra, lamps and conditions."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+from types import MappingProxyType
+
+from chroma.cli.options import Reading, Viewing
+from chroma.quantity import corrected
+from chroma.readers import read_spectra
+from chroma.resample import on_grid
+from chroma.spectra import Spectra, averaged, joined
+from chroma.tolerance import Tolerance
+from chroma.units import grid_nm
+from chroma.viewing import Conditions
+from observers.errors import InputError
+from observers.human import observer
+from observers.illuminants import Illuminant, illuminant, measured_lamp
+
+
+def spectra_from(files: Sequence[str], reading: Reading, *, grid: str | None = None) -> Spectra:
+    """All samples of the files on one grid, replicates averaged, blank and dark taken off."""
+    parts = [part for file in files for part in read_one(file, reading)]
+    if grid is not None:
+        parts = [on_grid(part, grid_nm(grid)) for part in parts]
+    return corrected(averaged(joined(parts)), blank=reading.blank, dark=reading.dark)
+
+
+def read_one(file: str, reading: Reading) -> tuple[Spectra, ...]:
+    """The spectra of one file, as its options say."""
+    grid = grid_nm(reading.wavelengths) if reading.wavelengths is not None else None
+    parts = read_spectra(
+        file, quantity=reading.quantity, absorbance_limit=reading.absorbance_limit, sheet=reading.sheet, grid=grid
+    )
+    name = "stdin" if file == "-" else Path(file).name
+    return tuple(replace(part, notes=tuple(f"{name}: {note}" for note in part.notes)) for part in parts)
+
+
+def target_from(text: str, reading: Reading) -> Spectra:
+    """One sample from ``FILE`` or ``FILE:NAME``; the blank and dark of the options apply where the file holds them."""
+    file, _, name = text.rpartition(":")
+    if Path(text).exists() or not file or not Path(file).exists():
+        file, name = text, ""
+    found = averaged(joined(read_one(file, reading)))
+    if reading.blank in found.names:
+        found = corrected(found, blank=reading.blank, dark=reading.dark)
+    if name:
+        try:
+            return found.take([found.row(name)])
+        except InputError as error:
+            raise error.at(file) from None
+    if len(found) > 1:
+        some = ", ".join(found.names[:8])
+        raise InputError(
+            f"{len(found)} samples", where=file, why=f"a target is one; there are {some}", do=f"say {file}:NAME"
+        )
+    return found
+
+
+def conditions_from(
+    viewing: Viewing, lamps: Sequence[str] | None = None, default: Tolerance | None = None
+) -> Conditions:
+    """Conditions of the options; lamps, observer and weights of a tolerance stand in where none is given."""
+    names = lamps if lamps is not None else viewing.illuminant or ("D65",)
+    resolved = tuple({lamp.name: lamp for lamp in map(lamp_from, names)}.values())
+    key = viewing.observer or (default.observer if default else "10")
+    method = viewing.weights or (default.weights if default else "cie")
+    return Conditions(resolved, observer(key), method, viewing.ends, viewing.bandpass)
+
+
+def with_lamps(tolerance: Tolerance, viewing: Viewing, folder: Path | None = None) -> tuple[Tolerance, Conditions]:
+    """A tolerance whose limits bear the names of its lamps, and its conditions; lamp files are sought beside it too."""
+    lamps = {spec: lamp_from(spec, folder) for spec in tolerance.limits}
+    limits = {lamps[spec].name: limit for spec, limit in tolerance.limits.items()}
+    named = replace(tolerance, limits=MappingProxyType(limits))
+    conditions = Conditions(
+        tuple({lamp.name: lamp for lamp in lamps.values()}.values()),
+        observer(tolerance.observer),
+        tolerance.weights,
+        viewing.ends,
+        viewing.bandpass,
+    )
+    return named, conditions
+
+
+def lamp_from(spec: str, folder: Path | None = None) -> Illuminant:
+    """A lamp by name, by formula, or from its file (also sought in ``folder``)."""
+    for path in (Path(spec), folder / spec if folder else Path(spec)):
+        if path.suffix and path.is_file():
+            from chroma.readers import read_lamp
+
+            table = read_lamp(str(path))
+            return measured_lamp(Path(spec).stem, table.wavelength_nm, table.power)
+    return illuminant(spec)

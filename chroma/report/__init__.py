@@ -1,0 +1,1 @@
+"""Tables and pictures of results; nothing is computed here beyond layout."""

@@ -1,0 +1,48 @@
+"""Plain text for a terminal: aligned tables and folded notes."""
+
+from __future__ import annotations
+
+import textwrap
+import unicodedata
+from collections.abc import Sequence
+
+WIDTH = 110
+
+
+def aligned(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    """A table with columns as wide as needed: what reads as a number to the right, words to the left."""
+    columns = list(zip(header, *rows, strict=True))
+    widths = [max(map(display_width, column)) for column in columns]
+    right = [all(_is_number(cell) for cell in column[1:]) and len(column) > 1 for column in columns]
+    lines = [
+        "  ".join(
+            _padded(cell, width, to_right) for cell, width, to_right in zip(row, widths, right, strict=True)
+        ).rstrip()
+        for row in (header, *rows)
+    ]
+    return "\n".join([lines[0], "  ".join("-" * width for width in widths), *lines[1:]])
+
+
+def notes(items: Sequence[str]) -> str:
+    """Notes as a list, folded to the width of a page."""
+    return "\n".join(textwrap.fill(item, WIDTH, initial_indent="  - ", subsequent_indent="    ") for item in items)
+
+
+def display_width(text: str) -> int:
+    """Columns that a text takes in a terminal: wide characters two, combining ones none."""
+    return sum(0 if unicodedata.combining(c) else 2 if unicodedata.east_asian_width(c) in "WF" else 1 for c in text)
+
+
+def _padded(cell: str, width: int, to_right: bool) -> str:
+    space = " " * (width - display_width(cell))
+    return space + cell if to_right else cell + space
+
+
+def _is_number(cell: str) -> bool:
+    if cell.strip() in ("", "–"):
+        return True
+    try:
+        float(cell.replace("−", "-"))
+    except ValueError:
+        return False
+    return True

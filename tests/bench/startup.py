@@ -1,0 +1,50 @@
+"""Start-up as a multiple of ``python -c "import numpy, click"``, medians of interleaved runs.
+
+What to reach: --help 0.6; check or predict on one small CSV 1.25. Prints a table and one line of JSON; with --strict it
+fails above twice the aim, which no noise explains.
+"""
+
+from __future__ import annotations
+
+import json
+import statistics
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+ROOT = Path(__file__).resolve().parents[2]
+SMALL = "demo_spectra/target.csv"
+BASE = ["-c", "import numpy, click"]
+RUNS = {
+    "lamplit --help": (["-m", "chroma", "--help"], 0.6),
+    "lamplit check": (["-m", "chroma", "check", SMALL, "--target", SMALL, "--limit", "1"], 1.25),
+    "lamplit predict": (["-m", "chroma", "predict", "--spectra", SMALL], 1.25),
+}
+
+
+def seconds(arguments: list[str]) -> float:
+    """Wall time of one run of the interpreter."""
+    start = time.perf_counter()
+    subprocess.run([sys.executable, *arguments], cwd=ROOT, check=True, capture_output=True)
+    return time.perf_counter() - start
+
+
+def ratios(rounds: int = 15) -> dict[str, float]:
+    """Median time of each run over the median of the base, taken in turns so that noise falls on all alike."""
+    times: dict[str, list[float]] = {name: [] for name in ("base", *RUNS)}
+    for _ in range(rounds):
+        times["base"].append(seconds(BASE))
+        for name, (arguments, _) in RUNS.items():
+            times[name].append(seconds(arguments))
+    base = statistics.median(times["base"])
+    return {name: statistics.median(values) / base for name, values in times.items() if name != "base"}
+
+
+if __name__ == "__main__":
+    found = ratios()
+    for name, ratio in found.items():
+        print(f"{name:20s} {ratio:5.2f}   to reach {RUNS[name][1]:g}")
+    print(json.dumps({"startup": found}))
+    if "--strict" in sys.argv:
+        sys.exit(any(ratio > 2 * RUNS[name][1] for name, ratio in found.items()))
