@@ -11,12 +11,12 @@ from chroma.decision import WORDS, decide, probability_within
 from chroma.difference.classic import components
 from chroma.difference.formulas import Formula
 from chroma.quantity import fraction
-from chroma.scatter import carried, coverage_factor, of_difference, of_distance, spread
 from chroma.spectra import Source, Spectra
 from chroma.tolerance import COMPONENTS, Tolerance
 from chroma.viewing import Conditions
 from observers.arrays import Array, Codes
 from observers.errors import InputError
+from observers.weights import Weights
 
 BLOCK = 4096  # batches at a time, so that the intermediate arrays stay in the processor's cache
 
@@ -89,9 +89,8 @@ def check(batches: Spectra, target: Spectra, tolerance: Tolerance, conditions: C
     delta_e, parts = differences(tolerance.formula, target_Lab, Lab)
 
     limits = np.array([tolerance.limits[lamp.name] for lamp in conditions.illuminants])
-    covariance, freedom = of_difference(spread(wanted, target_XYZ100, W_target), spread(shares, XYZ100, W))
-    judging = Judging(tolerance, target_Lab, Lab, covariance, freedom)
-    u, u_parts, factor, note = judging.uncertainties()
+    seen = Seen(target_Lab, Lab, (wanted, target_XYZ100, W_target), (shares, XYZ100, W))
+    u, u_parts, factor, note = _uncertainties(tolerance, seen)
     guard = tolerance.rule == "guard-band"
     verdicts = decide(delta_e, limits, factor * u if guard else 0.0)
     verdicts = np.maximum(verdicts, one_sided(tolerance, parts, factor * u_parts if guard else np.zeros(parts.shape)))
@@ -122,55 +121,57 @@ def differences(formula: Formula, target_Lab: Array, Lab: Array) -> tuple[Array,
     delta_e, parts = np.empty(Lab.shape[:2]), np.empty((*Lab.shape[:2], 5))
     for start in range(0, len(Lab), BLOCK):
         rows = slice(start, start + BLOCK)
-        delta_e[rows] = formula.difference(target_Lab, Lab[rows])
-        parts[rows] = components(target_Lab, Lab[rows])
+        # Each of L*, a*, b* on its own in memory: the formulas then read whole lines of the cache.
+        block = np.moveaxis(np.ascontiguousarray(np.moveaxis(Lab[rows], -1, 0)), 0, -1)
+        delta_e[rows] = formula.difference(target_Lab, block)
+        parts[rows] = components(target_Lab, block)
     return delta_e, parts
 
 
 @dataclass(frozen=True, eq=False)
-class Judging:
-    """What is needed to say how sure each difference is."""
+class Seen:
+    """Colours of target and samples, with the spectra, tristimulus values and weights behind each."""
 
-    tolerance: Tolerance
     target_Lab: Array
     Lab: Array
-    covariance: Array
-    freedom: int
+    target: tuple[Spectra, Array, Weights]
+    samples: tuple[Spectra, Array, Weights]
 
-    def uncertainties(self) -> tuple[Array, Array, float, tuple[str, ...]]:
-        """Standard uncertainty of ΔE (N, L) and of its parts (N, L, 5), the factor k, and what was done.
 
-        k is 0 where no uncertainty is known. A stated uncertainty goes before replicates.
-        """
-        shape = self.Lab.shape[:2]
-        k = self.tolerance.coverage
-        if self.tolerance.uncertainty is not None:
-            u = self.tolerance.uncertainty
-            note = f"U = {k:g} × {u:g}, stated for ΔE and each of its parts"
-            return np.full(shape, u), np.full((*shape, 5), u), k, (note,)
-        if self.freedom == 0:
-            if self.tolerance.rule == "guard-band":
-                raise InputError(
-                    "a guard band without an uncertainty",
-                    why="neither replicates nor a stated uncertainty are there",
-                    do="measure replicates (NAME#1, NAME#2), give --uncertainty, or take the rule simple",
-                )
-            return np.zeros(shape), np.zeros((*shape, 5)), 0.0, ()
-        return self._from_replicates(coverage_factor(k, self.freedom))
+def _uncertainties(tolerance: Tolerance, seen: Seen) -> tuple[Array, Array, float, tuple[str, ...]]:
+    """Standard uncertainty of ΔE (N, L) and of its parts (N, L, 5), the factor k of U = k·u, and what was done.
 
-    def _from_replicates(self, factor: float) -> tuple[Array, Array, float, tuple[str, ...]]:
-        u = of_distance(
-            lambda Lab: self.tolerance.formula.difference(self.target_Lab, Lab),
-            self.Lab,
-            self.covariance,
-            self.target_Lab,
-        )
-        u_parts = carried(lambda Lab: components(self.target_Lab, Lab), self.Lab, self.covariance)
-        note = (
-            f"U = {factor:.3g} × u, u from replicates pooled over all samples ({self.freedom} degrees of freedom, "
-            f"coverage {self.tolerance.coverage:g} of a Gaussian)"
-        )
-        return u, u_parts, factor, (note,)
+    k is 0 where no uncertainty is known. A stated uncertainty goes before what replicates say.
+    """
+    shape, k = seen.Lab.shape[:2], tolerance.coverage
+    if tolerance.uncertainty is not None:
+        u = tolerance.uncertainty
+        note = f"U = {k:g} × {u:g}, stated for ΔE and each of its parts"
+        return np.full(shape, u), np.full((*shape, 5), u), k, (note,)
+    if seen.target[0].scatter is None and seen.samples[0].scatter is None:
+        if tolerance.rule == "guard-band":
+            raise InputError(
+                "a guard band without an uncertainty",
+                why="neither replicates nor a stated uncertainty are there",
+                do="measure replicates (NAME#1, NAME#2), give --uncertainty, or take the rule simple",
+            )
+        return np.zeros(shape), np.zeros((*shape, 5)), 0.0, ()
+    return _from_replicates(tolerance, seen)
+
+
+def _from_replicates(tolerance: Tolerance, seen: Seen) -> tuple[Array, Array, float, tuple[str, ...]]:
+    from chroma.scatter import carried, coverage_factor, of_difference, of_distance, spread
+
+    covariance, freedom = of_difference(spread(*seen.target), spread(*seen.samples))
+    target_Lab, formula = seen.target_Lab, tolerance.formula
+    u = of_distance(lambda Lab: formula.difference(target_Lab, Lab), seen.Lab, covariance, target_Lab)
+    u_parts = carried(lambda Lab: components(target_Lab, Lab), seen.Lab, covariance)
+    factor = coverage_factor(tolerance.coverage, freedom)
+    note = (
+        f"U = {factor:.3g} × u, u from replicates pooled over all samples ({freedom} degrees of freedom, "
+        f"coverage {tolerance.coverage:g} of a Gaussian)"
+    )
+    return u, u_parts, factor, (note,)
 
 
 def one_sided(tolerance: Tolerance, parts: Array, expanded: Array) -> Codes:

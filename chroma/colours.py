@@ -99,19 +99,12 @@ def predict(spectra: Spectra, conditions: Conditions) -> Colours:
     )
 
 
-def Lab_deviations(spectra: Spectra, XYZ100: Array, W: Weights) -> Array:
-    """(R, L, 3) how far each replicate lies from the mean of its sample in L*a*b*; R is 0 without replicates."""
-    if spectra.scatter is None:
-        return np.zeros((0, *XYZ100.shape[1:]))
-    mean = XYZ100[spectra.scatter.row]
-    moved = mean + W.response(spectra.scatter.deviation)
-    return Lab_from_XYZ(moved, W.white) - Lab_from_XYZ(mean, W.white)
-
-
 def _replicate_uncertainty(spectra: Spectra, XYZ100: Array, W: Weights) -> Array:
     result = np.full(XYZ100.shape, np.nan)
     if spectra.scatter is None:
         return result
+    from chroma.scatter import Lab_deviations
+
     deviations = Lab_deviations(spectra, XYZ100, W)
     for row in np.unique(spectra.scatter.row):
         own = deviations[spectra.scatter.row == row]

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from chroma.colours import Lab_deviations
+from chroma.colour.spaces import Lab_from_XYZ
 from chroma.spectra import Spectra
 from observers.arrays import Array
 from observers.weights import Weights
@@ -41,6 +41,15 @@ def spread(spectra: Spectra, XYZ100: Array, W: Weights) -> Spread:
     readings[rows] = counts
     freedom = int((counts - 1).sum())
     return Spread(np.einsum("rli,rlj->lij", deviations, deviations) / freedom, freedom, readings)
+
+
+def Lab_deviations(spectra: Spectra, XYZ100: Array, W: Weights) -> Array:
+    """(R, L, 3) how far each replicate lies from the mean of its sample in L*a*b*; R is 0 without replicates."""
+    if spectra.scatter is None:
+        return np.zeros((0, *XYZ100.shape[1:]))
+    mean = XYZ100[spectra.scatter.row]
+    moved = mean + W.response(spectra.scatter.deviation)
+    return Lab_from_XYZ(moved, W.white) - Lab_from_XYZ(mean, W.white)
 
 
 def of_difference(target: Spread, sample: Spread) -> tuple[Array, int]:

@@ -2,10 +2,8 @@
 
 from __future__ import annotations
 
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from pathlib import Path
 from types import MappingProxyType
 from typing import Any, cast
 
@@ -75,6 +73,9 @@ def read_tolerance(path: str) -> Tolerance:
 
     Raises InputError naming the file for what cannot be read, is no TOML, or holds a key or value that is not known.
     """
+    import tomllib
+    from pathlib import Path
+
     try:
         content = tomllib.loads(Path(path).read_text(encoding="utf-8"))
     except OSError as error:

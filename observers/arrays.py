@@ -11,6 +11,12 @@ Index = npt.NDArray[np.intp]
 Codes = npt.NDArray[np.int8]
 
 
+def median(values: npt.ArrayLike) -> float:
+    """The median of a table's values, without the masked arrays that numpy's own loads at the first call (7 ms)."""
+    ordered = np.sort(np.asarray(values, dtype=np.float64), axis=None)
+    return float(ordered[(len(ordered) - 1) // 2] + ordered[len(ordered) // 2]) / 2
+
+
 def frozen(values: npt.ArrayLike) -> Array:
     """A read-only float64 array; what is already float64 and read-only is not copied."""
     array = np.asarray(values, dtype=np.float64)

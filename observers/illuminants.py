@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from observers.arrays import Array, frozen
+from observers.arrays import Array, frozen, median
 from observers.errors import InputError, unknown_name
 from observers.grid import Rule, is_uniform, resampling
 from observers.tables import table
@@ -148,7 +148,7 @@ def power_at(lamp: Illuminant, wavelength_nm: Array) -> Array:
     result = np.zeros(len(wavelength_nm))
     inside = (wavelength_nm >= own[0]) & (wavelength_nm <= own[-1])
     wanted = wavelength_nm[inside]
-    if len(own) > 1 and np.median(np.diff(own)) < 0.75 * np.median(np.diff(wavelength_nm)):
+    if len(own) > 1 and median(np.diff(own)) < 0.75 * median(np.diff(wavelength_nm)):
         result[inside] = _step_means(own, lamp.power, wanted)
     elif inside.any():
         result[inside] = resampling(own, wanted, lamp.rule) @ lamp.power

@@ -12,7 +12,7 @@ from typing import Literal, get_args
 
 import numpy as np
 
-from observers.arrays import Array, frozen
+from observers.arrays import Array, frozen, median
 from observers.errors import InputError
 from observers.grid import held, is_uniform, stated_rule
 from observers.human import Observer, responsivity_at
@@ -117,7 +117,7 @@ def bandpass_correction(wavelength_nm: Array) -> Array:
 def _cie_fold(wavelength_nm: Array) -> Array:
     """(471, B): spectrum to 1 nm, ends held; a grid finer than that is averaged onto the 1 nm points instead."""
     steps = np.diff(wavelength_nm)
-    if len(steps) and np.median(steps) < 0.75:
+    if len(steps) and median(steps) < 0.75:
         return _fine_fold(wavelength_nm)
     return held(wavelength_nm, STANDARD_NM, stated_rule(wavelength_nm))
 

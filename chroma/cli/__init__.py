@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 import os
 import sys
 from importlib import import_module
@@ -95,6 +94,8 @@ def _usage(error: click.ClickException) -> InputError:
 
 def _refuse(error: InputError, as_json: bool) -> int:
     if as_json:
+        import json
+
         content: dict[str, Any] = {"error": error.as_dict()}
         print(json.dumps(content, ensure_ascii=False))
     else:

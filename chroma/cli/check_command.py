@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from pathlib import Path
+import os
 
 import click
 
@@ -21,8 +21,7 @@ from chroma.cli.options import (
 )
 from chroma.cli.output import emit
 from chroma.decision import RULES, Rule
-from chroma.report.rows import check_object, check_rows
-from chroma.report.tables import check_table
+from chroma.report.check_report import check_object, check_rows, check_table
 from chroma.tolerance import Tolerance, read_tolerance
 from observers.errors import InputError
 
@@ -73,7 +72,7 @@ def command(
     }
     if tolerance_file is not None:
         refuse_both(stated, f"--tolerance {tolerance_file}")
-        tolerance, conditions = with_lamps(read_tolerance(tolerance_file), viewing, Path(tolerance_file).parent)
+        tolerance, conditions = with_lamps(read_tolerance(tolerance_file), viewing, os.path.dirname(tolerance_file))
     elif limit is not None:
         limits = dict.fromkeys(viewing.illuminant or ("D65",), limit)
         plain = Tolerance(

@@ -11,8 +11,9 @@ from chroma.batches import Checked, check
 from chroma.cli.inputs import spectra_from, target_from, with_lamps
 from chroma.cli.options import Reading, Viewing
 from chroma.colours import Colours, predict
-from chroma.report.rows import check_rows, colour_rows, flat
-from chroma.report.tables import check_table, colours_table, spectra_table
+from chroma.report.check_report import check_rows, check_table
+from chroma.report.colour_report import colour_rows, colours_table, flat
+from chroma.report.spectra_report import spectra_table
 from chroma.spectra import ABSORBANCE_LIMIT, Spectra
 from chroma.tolerance import Tolerance, read_tolerance
 from observers.errors import InputError

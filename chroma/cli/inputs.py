@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Sequence
 from dataclasses import replace
-from pathlib import Path
 from types import MappingProxyType
 
 from chroma.cli.options import Reading, Viewing
@@ -34,14 +34,14 @@ def read_one(file: str, reading: Reading) -> tuple[Spectra, ...]:
     parts = read_spectra(
         file, quantity=reading.quantity, absorbance_limit=reading.absorbance_limit, sheet=reading.sheet, grid=grid
     )
-    name = "stdin" if file == "-" else Path(file).name
+    name = "stdin" if file == "-" else os.path.basename(file)
     return tuple(replace(part, notes=tuple(f"{name}: {note}" for note in part.notes)) for part in parts)
 
 
 def target_from(text: str, reading: Reading) -> Spectra:
     """One sample from ``FILE`` or ``FILE:NAME``; the blank and dark of the options apply where the file holds them."""
     file, _, name = text.rpartition(":")
-    if Path(text).exists() or not file or not Path(file).exists():
+    if os.path.exists(text) or not file or not os.path.exists(file):
         file, name = text, ""
     found = averaged(joined(read_one(file, reading)))
     if reading.blank in found.names:
@@ -70,7 +70,7 @@ def conditions_from(
     return Conditions(resolved, observer(key), method, viewing.ends, viewing.bandpass)
 
 
-def with_lamps(tolerance: Tolerance, viewing: Viewing, folder: Path | None = None) -> tuple[Tolerance, Conditions]:
+def with_lamps(tolerance: Tolerance, viewing: Viewing, folder: str | None = None) -> tuple[Tolerance, Conditions]:
     """A tolerance whose limits bear the names of its lamps, and its conditions; lamp files are sought beside it too."""
     lamps = {spec: lamp_from(spec, folder) for spec in tolerance.limits}
     limits = {lamps[spec].name: limit for spec, limit in tolerance.limits.items()}
@@ -85,12 +85,12 @@ def with_lamps(tolerance: Tolerance, viewing: Viewing, folder: Path | None = Non
     return named, conditions
 
 
-def lamp_from(spec: str, folder: Path | None = None) -> Illuminant:
+def lamp_from(spec: str, folder: str | None = None) -> Illuminant:
     """A lamp by name, by formula, or from its file (also sought in ``folder``)."""
-    for path in (Path(spec), folder / spec if folder else Path(spec)):
-        if path.suffix and path.is_file():
+    for path in (spec, os.path.join(folder or "", spec)):
+        if os.path.splitext(path)[1] and os.path.isfile(path):
             from chroma.readers import read_lamp
 
-            table = read_lamp(str(path))
-            return measured_lamp(Path(spec).stem, table.wavelength_nm, table.power)
+            table = read_lamp(path)
+            return measured_lamp(os.path.splitext(os.path.basename(spec))[0], table.wavelength_nm, table.power)
     return illuminant(spec)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
@@ -33,4 +32,6 @@ def emit(
 
 def as_json(content: Mapping[str, Any]) -> str:
     """One JSON object; what is not a number is null, never NaN."""
+    import json
+
     return json.dumps(content, ensure_ascii=False, allow_nan=False)

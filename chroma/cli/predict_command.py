@@ -10,8 +10,8 @@ from chroma.cli.inputs import conditions_from, spectra_from
 from chroma.cli.options import Output, Reading, Viewing, output_options, reading_options, viewing_options
 from chroma.cli.output import emit
 from chroma.colours import Colours, predict
-from chroma.report.rows import colour_rows, condition_row, flat, inconstancy_rows, source_rows
-from chroma.report.tables import colours_table
+from chroma.report.colour_report import colour_rows, colours_table, flat, inconstancy_rows
+from chroma.report.rows import condition_row, source_rows
 from observers.errors import InputError
 
 

@@ -8,8 +8,7 @@ from chroma.cli.inputs import spectra_from
 from chroma.cli.options import Output, Reading, output_options, reading_options
 from chroma.cli.output import as_json
 from chroma.quantity import at_path_length, converted
-from chroma.report.rows import spectra_object
-from chroma.report.tables import spectra_table
+from chroma.report.spectra_report import spectra_object, spectra_table
 from chroma.spectra import QUANTITIES, Quantity
 from chroma.units import path_length_mm
 from observers.errors import InputError

@@ -5,9 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal, get_args
 
-from chroma.difference.ciede2000 import ciede2000
 from chroma.difference.classic import cie94, cie1976, cmc
-from chroma.difference.din99o import din99o
 from observers.arrays import Array
 from observers.errors import InputError, unknown_name
 
@@ -52,6 +50,8 @@ class Formula:
         kL, kC, kH = self.k or (1.0, 1.0, 1.0)
         match self.name:
             case "ciede2000":
+                from chroma.difference.ciede2000 import ciede2000
+
                 return ciede2000(target, sample, kL=kL, kC=kC, kH=kH)
             case "cie1976":
                 return cie1976(target, sample)
@@ -63,4 +63,6 @@ class Formula:
                 l, c = self.l_c or (2.0, 1.0)  # noqa: E741 - the formula is named l:c
                 return cmc(target, sample, l=l, c=c)
             case "din99o":
+                from chroma.difference.din99o import din99o
+
                 return din99o(target, sample)

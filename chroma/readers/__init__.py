@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from chroma.readers import text
-from chroma.readers.lamp import LampTable, read_lamp
 from chroma.readers.text import SIZE_LIMIT
 from chroma.spectra import ABSORBANCE_LIMIT, Quantity, Spectra
 from observers.arrays import Array
 
-__all__ = ["SIZE_LIMIT", "LampTable", "read_lamp", "read_spectra"]
+if TYPE_CHECKING:
+    from chroma.readers.lamp import LampTable
+
+__all__ = ["SIZE_LIMIT", "read_lamp", "read_spectra"]
 
 
 def read_spectra(
@@ -40,3 +44,10 @@ def read_spectra(
         absorbance_limit=absorbance_limit,
         notes=found.notes,
     )
+
+
+def read_lamp(path: str, *, sheet: str | None = None, size_limit: int = SIZE_LIMIT) -> LampTable:
+    """A measured lamp from delimited text or IES TM-27; see `chroma.readers.lamp.read_lamp`."""
+    from chroma.readers import lamp
+
+    return lamp.read_lamp(path, sheet=sheet, size_limit=size_limit)

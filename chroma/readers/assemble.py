@@ -11,7 +11,7 @@ from chroma.readers import words
 from chroma.readers.table import LIKELY_NM, Table
 from chroma.readers.words import Meaning
 from chroma.spectra import LARGEST_FRACTION, Quantity, Source, Spectra, grid_text, measured
-from observers.arrays import Array
+from observers.arrays import Array, median
 from observers.errors import InputError
 
 PERCENT_FROM = 3.0  # a largest value above this is no fraction; between LARGEST_FRACTION and this it could be either
@@ -143,7 +143,7 @@ def _refuse_disorder(table: Table, nm: Array) -> None:
         )
     steps = np.diff(nm)
     if len(steps) and not (np.all(steps > 0) or np.all(steps < 0)):
-        turn = np.sign(steps) != np.sign(np.median(np.sign(steps)) or steps[0])
+        turn = np.sign(steps) != np.sign(median(np.sign(steps)) or steps[0])
         at = int(np.flatnonzero(turn)[0]) + 1
         raise InputError(
             f"the wavelength {nm[at]:g} nm is out of order",
@@ -248,7 +248,7 @@ def _fractions(table: Table, meant: Meaning, where: str) -> tuple[Array, str]:
         return values, ""
     if meant.percent:
         return values / 100, "per cent, divided by 100"
-    typical = float(np.median(values.max(axis=1)))
+    typical = median(values.max(axis=1))
     if typical <= LARGEST_FRACTION:
         return values, ""
     if typical > PERCENT_FROM:

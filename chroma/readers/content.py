@@ -52,15 +52,29 @@ def _text(raw: Raw, words: str, grid: Array | None, quantity_known: bool) -> Con
         from chroma.readers import json_
 
         return Contents(json_.tables_of(words, raw.path), "JSON")
-    from chroma.readers import cgats, delimited, jcamp, layout
+    labelled = _labelled(raw, words, quantity_known)
+    if labelled is not None:
+        return labelled
+    from chroma.readers import delimited, layout
 
-    if jcamp.looks_like(words):
-        lines = text.lines_of(raw, words)
-        return Contents(jcamp.tables_of(lines, raw.path, quantity_known=quantity_known), "JCAMP-DX")
-    if cgats.looks_like(words):
-        return Contents(cgats.tables_of(text.lines_of(raw, words), raw.path), "CGATS.17 text")
     cells = delimited.sheet_of(raw, words)
     return Contents(layout.tables_of(cells, raw.stem, grid), cells.described)
+
+
+def _labelled(raw: Raw, words: str, quantity_known: bool) -> Contents | None:
+    """JCAMP-DX or CGATS.17, where the text is either; their readers are loaded only for a text that has their marks."""
+    if "##" in words[:5000]:
+        from chroma.readers import jcamp
+
+        if jcamp.looks_like(words):
+            lines = text.lines_of(raw, words)
+            return Contents(jcamp.tables_of(lines, raw.path, quantity_known=quantity_known), "JCAMP-DX")
+    if "BEGIN_DATA_FORMAT" in words[:200_000]:
+        from chroma.readers import cgats
+
+        if cgats.looks_like(words):
+            return Contents(cgats.tables_of(text.lines_of(raw, words), raw.path), "CGATS.17 text")
+    return None
 
 
 def _xml(raw: Raw) -> Contents:

@@ -7,7 +7,6 @@ import hashlib
 import os
 import sys
 from dataclasses import dataclass
-from pathlib import PurePath
 from typing import BinaryIO
 
 from chroma.spectra import Source
@@ -51,12 +50,12 @@ class Raw:
     @property
     def stem(self) -> str:
         """The name of the file without folder and suffix."""
-        return "stdin" if self.path == "-" else PurePath(self.path).stem
+        return "stdin" if self.path == "-" else os.path.splitext(os.path.basename(self.path))[0]
 
     @property
     def suffix(self) -> str:
         """The suffix in small letters, with its dot."""
-        return PurePath(self.path).suffix.lower()
+        return os.path.splitext(self.path)[1].lower()
 
 
 def load(path: str, size_limit: int = SIZE_LIMIT) -> Raw:
@@ -65,7 +64,7 @@ def load(path: str, size_limit: int = SIZE_LIMIT) -> Raw:
         if path == "-":
             data = _bounded(sys.stdin.buffer, size_limit, path)
         else:
-            with open(path, "rb") as stream:  # noqa: PTH123 - a path object would lose the spelling given
+            with open(path, "rb") as stream:
                 data = _bounded(stream, size_limit, path)
     except (OSError, ValueError) as error:
         if isinstance(error, InputError):

@@ -8,8 +8,7 @@ import numpy as np
 
 from chroma.dye.model import Dye
 from chroma.dye.unmix import Unmixed
-from chroma.report.tables import joined_lines, sources_line
-from chroma.report.text import aligned, notes
+from chroma.report.text import aligned, joined_lines, notes, sources_line
 
 
 def dye_table(dye: Dye) -> str:

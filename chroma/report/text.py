@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-import textwrap
-import unicodedata
 from collections.abc import Sequence
 
+from chroma.spectra import Source
+
 WIDTH = 110
+MOST_ROWS = 200  # what a person reads in a terminal; the rest is in --out or --json
 
 
 def aligned(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
@@ -25,11 +26,17 @@ def aligned(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
 
 def notes(items: Sequence[str]) -> str:
     """Notes as a list, folded to the width of a page."""
+    import textwrap
+
     return "\n".join(textwrap.fill(item, WIDTH, initial_indent="  - ", subsequent_indent="    ") for item in items)
 
 
 def display_width(text: str) -> int:
     """Columns that a text takes in a terminal: wide characters two, combining ones none."""
+    if text.isascii():
+        return len(text)
+    import unicodedata
+
     return sum(0 if unicodedata.combining(c) else 2 if unicodedata.east_asian_width(c) in "WF" else 1 for c in text)
 
 
@@ -46,3 +53,30 @@ def _is_number(cell: str) -> bool:
     except ValueError:
         return False
     return True
+
+
+def conditions_line(text: str) -> str:
+    """The conditions as one line."""
+    return f"Conditions: {text}"
+
+
+def sources_line(sources: Sequence[Source]) -> str:
+    """The files and the first digits of their checksums; --json has them whole."""
+    return (
+        "Files: " + ", ".join(f"{source.path} (SHA-256 {source.sha256[:12]}…)" for source in sources) if sources else ""
+    )
+
+
+def two_places(value: float) -> str:
+    """Two decimals, with no minus before a zero."""
+    return f"{value + 0.0:.2f}" if round(value, 2) else "0.00"
+
+
+def cut_line(count: int) -> str:
+    """How many rows were left out of a table, where some were."""
+    return f"… {count - MOST_ROWS} more; see --out or --json" if count > MOST_ROWS else ""
+
+
+def joined_lines(*parts: str) -> str:
+    """The parts that are not empty, a line each."""
+    return "\n".join(part for part in parts if part)

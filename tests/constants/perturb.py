@@ -95,10 +95,10 @@ ALLOWED: dict[tuple[str, str, float | None], str] = {
     ("chroma/decision.py", "FAR = 1e3", 1e3): "where one form gives way to the other; both agree there",
     ("chroma/decision.py", "LARGEST = 1e6", 1e6): "keeps a special function within its range",
     ("chroma/scatter.py", "max(freedom, 1)", 1): "keeps from dividing by zero; the covariance is zero there",
-    ("observers/illuminants.py", "if len(own) > 1 and np.median", 1): "two points or more are asked for before",
+    ("observers/illuminants.py", "if len(own) > 1 and median", 1): "two points or more are asked for before",
     (
         "observers/weights.py",
-        "np.median(steps) < 0.75",
+        "median(steps) < 0.75",
         0.75,
     ): "where averaging begins; both sides of it are tested equal",
     ("observers/weights.py", "+ 1e-6) // step", 1e-6): "a tolerance for rounding of wavelengths",

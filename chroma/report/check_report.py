@@ -1,0 +1,113 @@
+"""Verdicts as rows and as a table. Field names here are relied on by others."""
+
+from __future__ import annotations
+
+from chroma.batches import Checked
+from chroma.decision import WORDS
+from chroma.metamerism import change, special_indices
+from chroma.off_target import off_target
+from chroma.reason import reason, signed_reasons
+from chroma.report.rows import Row, condition_row, number, source_rows
+from chroma.report.text import MOST_ROWS, aligned, conditions_line, cut_line, joined_lines, notes, sources_line
+from chroma.tolerance import COMPONENTS
+
+
+def check_rows(checked: Checked) -> list[Row]:
+    """One row a batch and lamp, with the fields that design.md names and more."""
+    expanded, within = checked.expanded, checked.within
+    rows = []
+    for i, name in enumerate(checked.names):
+        off, worst = off_target(checked, i), WORDS[checked.worst[i]]
+        for j, lamp in enumerate(checked.conditions.illuminants):
+            row: Row = {"name": name, "illuminant": lamp.name, "delta_e": float(checked.delta_e[i, j])}
+            row |= {key: float(value) for key, value in zip(COMPONENTS, checked.parts[i, j], strict=True)}
+            row |= {"verdict": WORDS[checked.verdicts[i, j]], "limit": float(checked.limits[j])}
+            row |= {"reason": reason(checked, i, j)}
+            row |= {"U": None if expanded is None else float(expanded[i, j])}
+            row |= {"probability_within": None if within is None else float(within[i, j])}
+            rows.append(row | {"batch_verdict": worst, "off": off})
+    return rows
+
+
+def check_object(checked: Checked) -> Row:
+    """The whole answer of ``check`` as one JSON object."""
+    limits = {
+        lamp.name: float(limit) for lamp, limit in zip(checked.conditions.illuminants, checked.limits, strict=True)
+    }
+    values = set(limits.values())
+    tolerance = checked.tolerance
+    return {
+        "target": checked.target,
+        "formula": str(tolerance.formula),
+        "limit": values.pop() if len(values) == 1 else None,
+        "limits": limits,
+        "rule": tolerance.rule,
+        "one_sided": dict(tolerance.one_sided),
+        "results": check_rows(checked),
+        "metamerism": _metamerism_rows(checked),
+        "summary": checked.counts(),
+        "conditions": condition_row(checked.conditions),
+        "notes": list(checked.notes),
+        "sources": source_rows(checked.sources),
+    }
+
+
+def _metamerism_rows(checked: Checked) -> list[Row]:
+    first, *others = (lamp.name for lamp in checked.conditions.illuminants)
+    changes, indices = change(checked), special_indices(checked)
+    return [
+        {
+            "name": name,
+            "reference": first,
+            "test": other,
+            "change": float(changes[i, j]),
+            "special_index": number(indices[i, j]),
+        }
+        for i, name in enumerate(checked.names)
+        for j, other in enumerate(others)
+    ]
+
+
+def check_table(checked: Checked) -> str:
+    """One line a batch: verdict, ΔE under each lamp, what is off; then the summary and what it rests on."""
+    lamps = [lamp.name for lamp in checked.conditions.illuminants]
+    header = ["batch", "verdict", *(f"dE {lamp}" for lamp in lamps), "what is off"]
+    rows = [
+        [name, WORDS[checked.worst[i]], *(_delta(checked, i, j) for j in range(len(lamps))), _remark(checked, i)]
+        for i, name in enumerate(checked.names[:MOST_ROWS])
+    ]
+    limits = ", ".join(f"{lamp} {limit:g}" for lamp, limit in zip(lamps, checked.limits, strict=True))
+    signed = "".join(f", {key} {value:g}" for key, value in checked.tolerance.one_sided.items())
+    counts = checked.counts()
+    summary = (
+        f"{counts['batches']} batches: {counts['pass']} pass, {counts['fail']} fail, {counts['undecided']} undecided"
+    )
+    return joined_lines(
+        f"Target {checked.target}; {checked.tolerance.formula}; limits {limits}{signed}; rule {checked.tolerance.rule}",
+        aligned(header, rows),
+        cut_line(len(checked.names)),
+        summary,
+        conditions_line(str(checked.conditions)),
+        notes(checked.notes),
+        sources_line(checked.sources),
+    )
+
+
+def _delta(checked: Checked, row: int, lamp: int) -> str:
+    text = f"{checked.delta_e[row, lamp]:.2f}"
+    if checked.expanded is not None:
+        text += f" ± {checked.expanded[row, lamp]:.2f}"
+    return text
+
+
+def _remark(checked: Checked, row: int) -> str:
+    """What is off, a signed limit that is not kept, and a warning where the match holds under the first lamp only."""
+    words = off_target(checked, row)
+    indices = special_indices(checked)[row]
+    over = [
+        f"{lamp.name} {index:.1f}"
+        for lamp, index, limit in zip(checked.conditions.illuminants[1:], indices, checked.limits[1:], strict=True)
+        if index > limit
+    ]
+    signed = [text for lamp in range(len(checked.limits)) for text in signed_reasons(checked, row, lamp)[:1]][:1]
+    return "; ".join([words, *signed, *([f"metameric: {', '.join(over)}"] if over else [])])
