@@ -5,21 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from chroma.batches import Checked
-from chroma.colour.spaces import Lab_from_XYZ
-from chroma.difference.classic import cie1976
+from chroma.difference.metameric_index import special_index
 from observers.arrays import Array
-
-
-def special_index(
-    target_ref: Array, target_test: Array, sample_ref: Array, sample_test: Array, white_test: Array
-) -> Array:
-    """CIE special index of metamerism, change of illuminant (…): ΔE*ab under the test lamp after correction.
-
-    The four are XYZ100 (…, 3). What the pair differs by under the reference lamp is first taken out by multiplying the
-    sample's tristimulus values (CIE 15:2018, 9.2; CIE Publ. 15 names the multiplicative correction).
-    """
-    corrected = sample_test * target_ref / sample_ref
-    return cie1976(Lab_from_XYZ(target_test, white_test), Lab_from_XYZ(corrected, white_test))
 
 
 def change(checked: Checked) -> Array:

@@ -116,3 +116,16 @@ def wavelength_range_nm(text: str) -> tuple[float, float]:
             f"range {text!r}", why="two wavelengths are wanted, the lower first", do="write it as 420:700nm"
         )
     return low, high
+
+
+VOLUME_L = {"m3": 1e3, "m³": 1e3, "L": 1.0, "l": 1.0, "mL": 1e-3, "ml": 1e-3}
+
+
+def volume_L(text: str) -> float:
+    """A volume in litres from ``500L``, ``250mL`` or ``2m3``; raises InputError without a unit or when not positive."""
+    match = re.fullmatch(rf"\s*({NUMBER})\s*({'|'.join(VOLUME_L)})\s*", text)
+    if not match or float(match.group(1)) <= 0:
+        raise InputError(
+            f"volume {text!r}", why="a positive number with its unit is wanted", do="write it as 500L or 2m3"
+        )
+    return float(match.group(1)) * VOLUME_L[match.group(2)]

@@ -17,6 +17,7 @@ COMMANDS = {
     "spectra": ("chroma.cli.spectra_command", "what is in a file of spectra; convert and correct it"),
     "predict": ("chroma.cli.predict_command", "the colour of spectra under each lamp"),
     "dye": ("chroma.cli.dye_command", "the absorptivity of a dye from a dilution series"),
+    "match": ("chroma.cli.match_command", "recipes of dyes that meet a target"),
     "unmix": ("chroma.cli.unmix_command", "what is in a solution that was measured"),
     "check": ("chroma.cli.check_command", "a verdict on each batch against a target"),
     "demo": ("chroma.cli.demo_command", "the whole job on invented spectra of fountain water"),

@@ -15,9 +15,9 @@ import numpy as np
 
 from chroma.calibration import quantile
 from chroma.dye.model import Dye
-from chroma.dye.solution import LN10, Shelf, shelf
+from chroma.dye.shared import shared
+from chroma.dye.solution import LN10, Shelf
 from chroma.quantity import converted
-from chroma.resample import within
 from chroma.spectra import Source, Spectra
 from observers.arrays import Array, Mask
 from observers.errors import InputError
@@ -120,16 +120,10 @@ def unmix_spectra(
     absorbance_limit: float = 3.0,
 ) -> Unmixed:  # fmt: skip
     """Like `unmix`, with the dyes brought to the grid of the spectra over the range that all of them cover."""
-    if not dyes:
-        raise InputError("no dye was given", do="name one with --dye")
-    low = max(dye.wavelength_nm[0] for dye in dyes)
-    high = min(dye.wavelength_nm[-1] for dye in dyes)
-    if span_nm is not None:
-        low, high = max(low, span_nm[0]), min(high, span_nm[1])
-    shared = within(spectra, low, high)
+    cut, stock = shared(spectra, dyes, span_nm=span_nm)
     return unmix(
-        shared, shelf(dyes, wavelength_nm=shared.wavelength_nm), path_length_mm=path_length_mm, baseline=baseline,
-        scatter_power=scatter_power, noise_T=noise_T, confidence=confidence, absorbance_limit=absorbance_limit,
+        cut, stock, path_length_mm=path_length_mm, baseline=baseline, scatter_power=scatter_power, noise_T=noise_T,
+        confidence=confidence, absorbance_limit=absorbance_limit,
     )  # fmt: skip
 
 

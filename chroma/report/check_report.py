@@ -2,14 +2,20 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
 from chroma.batches import Checked
 from chroma.decision import WORDS
 from chroma.metamerism import change, special_indices
 from chroma.off_target import off_target
 from chroma.reason import reason, signed_reasons
 from chroma.report.rows import Row, condition_row, number, source_rows
-from chroma.report.text import MOST_ROWS, aligned, conditions_line, cut_line, joined_lines, notes, sources_line
+from chroma.report.text import CAUTION, MOST_ROWS, aligned, conditions_line, cut_line, joined_lines, notes, sources_line
 from chroma.tolerance import COMPONENTS
+
+if TYPE_CHECKING:
+    from chroma.batch_corrections import BatchCorrection
 
 
 def check_rows(checked: Checked) -> list[Row]:
@@ -111,3 +117,48 @@ def _remark(checked: Checked, row: int) -> str:
     ]
     signed = [text for lamp in range(len(checked.limits)) for text in signed_reasons(checked, row, lamp)[:1]][:1]
     return "; ".join([words, *signed, *([f"metameric: {', '.join(over)}"] if over else [])])
+
+
+def corrections_lines(checked: Checked, corrections: Sequence[BatchCorrection]) -> list[str]:
+    """What to add to each batch that is off, with its strength, one line each."""
+    if not corrections:
+        return []
+    lines = ["", "What to add, by Beer's law from the batch as measured (try it on a sample first):"]
+    for one in corrections:
+        found = one.correction
+        strength = found.strength if found is not None else None
+        said = (
+            ""
+            if strength is None
+            else (
+                f"strength {float(strength.at_peak):.1f} % at {strength.peak_nm:g} nm, {float(strength.summed):.1f} % summed; "
+            )
+        )
+        lines.append(notes([f"{checked.names[one.row]}: {said}{one.said}"]))
+    return [*lines, CAUTION]
+
+
+def correction_rows(checked: Checked, corrections: Sequence[BatchCorrection]) -> list[Row]:
+    """One row a batch that did not pass."""
+    return [_correction_row(checked.names[one.row], one) for one in corrections]
+
+
+def _correction_row(name: str, one: BatchCorrection) -> Row:
+    found = one.correction
+    if found is None:
+        return {"name": name, "said": one.said, "addition": None}
+    lamps = found.illuminants
+    added = found.addition or found.closest
+    return {
+        "name": name,
+        "said": one.said,
+        "reaches": found.addition is not None,
+        "addition_per_litre": dict(added.dyes),
+        "unit": found.unit,
+        "water_per_litre": added.water,
+        "delta_e_expected": dict(zip(lamps, map(float, added.delta_e), strict=True)),
+        "strength_at_peak_percent": None if found.strength is None else float(found.strength.at_peak),
+        "strength_summed_percent": None if found.strength is None else float(found.strength.summed),
+        "composition": dict(zip(found.composition.shelf.names, map(float, found.composition.value[0]), strict=True)),
+        "foreign": bool(found.composition.foreign[0]),
+    }

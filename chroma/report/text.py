@@ -7,6 +7,8 @@ from collections.abc import Sequence
 from chroma.spectra import Source
 
 WIDTH = 110
+# Common practice; printed wherever a recipe or an addition is proposed.
+CAUTION = "Handle dyes by their safety data sheets; let dyed water out only as local codes allow."
 MOST_ROWS = 200  # what a person reads in a terminal; the rest is in --out or --json
 
 

@@ -11,8 +11,8 @@ from chroma.colour.spaces import Lab_from_XYZ, XYZ_from_Lab, uv_prime, xyY_from_
 from chroma.decision import conformance_probability, guard_banded_limit, probability_within
 from chroma.difference.classic import cie1976
 from chroma.difference.formulas import Formula
+from chroma.difference.metameric_index import special_index
 from chroma.inconstancy import corresponding, degree_of_adaptation, inconstancy
-from chroma.metamerism import special_index
 from observers.human import observer
 from observers.illuminants import A_C2_NM_K, A_TEMPERATURE_K, PLANCK_C2_M_K, blackbody, illuminant, power_at
 from observers.weights import weights

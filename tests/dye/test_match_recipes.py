@@ -8,10 +8,10 @@ from matching_world import LAMPS, NM, SIX, at, dye, foreign_transmittance, nearl
 
 from chroma.colour.spaces import Lab_from_XYZ
 from chroma.difference.formulas import Formula
+from chroma.difference.metameric_index import special_index
 from chroma.dye.solution import shelf, transmittance
 from chroma.matching.goal import target_Lab, target_spectrum
 from chroma.matching.recipes import match
-from chroma.metamerism import special_index
 from observers.errors import InputError
 
 STOCK, W = stock_of(), seen()

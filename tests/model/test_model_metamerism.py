@@ -9,8 +9,9 @@ from chroma.batches import check
 from chroma.colour.spaces import Lab_from_XYZ
 from chroma.colours import predict
 from chroma.difference.classic import cie1976
+from chroma.difference.metameric_index import special_index
 from chroma.inconstancy import inconstancies, inconstancy
-from chroma.metamerism import change, special_index, special_indices
+from chroma.metamerism import change, special_indices
 from chroma.spectra import measured
 from chroma.tolerance import Tolerance
 from chroma.viewing import conditions

@@ -1,0 +1,1 @@
+"""Finding amounts: recipes that meet a target, and what the search for them is made of."""
