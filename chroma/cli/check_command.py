@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import click
@@ -14,7 +15,7 @@ from chroma.cli.options import (
     Reading,
     Viewing,
     formula_from,
-    formula_options,
+    gathered,
     output_options,
     reading_options,
     refuse_both,
@@ -22,8 +23,10 @@ from chroma.cli.options import (
 )
 from chroma.cli.output import emit
 from chroma.decision import RULES, Rule
+from chroma.difference.formulas import FORMULAS
 from chroma.report.check_report import check_object, check_rows, check_table, correction_rows, corrections_lines
 from chroma.tolerance import Tolerance, read_tolerance
+from chroma.viewing import Conditions
 from observers.errors import InputError
 
 if TYPE_CHECKING:
@@ -31,111 +34,140 @@ if TYPE_CHECKING:
     from chroma.spectra import Spectra
 
 
+@dataclass(frozen=True)
+class Holding:
+    """What the batches are held to."""
+
+    limit: float | None
+    tolerance: str | None
+    rule: Rule | None
+    uncertainty: float | None
+    coverage: float | None
+    formula: str | None
+    cmc: str | None
+    k: str | None
+
+
+@dataclass(frozen=True)
+class Adding:
+    """With which dyes a batch that is off may be put right."""
+
+    dye: tuple[str, ...]
+    path_length: str | None
+    volume: str | None
+    most_water: str
+
+
+holding_options = gathered(
+    Holding,
+    "holding",
+    click.option("--limit", type=float, help="The largest colour difference that passes, under each lamp."),
+    click.option("--tolerance", metavar="FILE.toml", help="Limits, lamps, formula and rule from a file."),
+    click.option(
+        "--rule", type=click.Choice(RULES), help="How a difference near the limit is judged.  [default: simple]"
+    ),
+    click.option(
+        "--uncertainty", type=float, help="Standard uncertainty of a difference, instead of that of replicates."
+    ),
+    click.option("--coverage", type=float, help="Factor k of the expanded uncertainty.  [default: 2]"),
+    click.option("--formula", type=click.Choice(FORMULAS), help="The colour difference.  [default: ciede2000]"),
+    click.option("--cmc", metavar="l:c", help="Weights of cmc.  [default: 2:1]"),
+    click.option("--k", metavar="kL:kC:kH", help="Parametric factors of ciede2000 or cie94.  [default: 1:1:1]"),
+)
+adding_options = gathered(
+    Adding,
+    "adding",
+    click.option(
+        "--dye",
+        multiple=True,
+        metavar="NAME.dye.json",
+        help="A dye that may be added: say what to add to each batch that is off.",
+    ),
+    click.option("--path-length", metavar="LENGTH", help="Of the batches' cell, with --dye (10mm)."),
+    click.option(
+        "--volume", metavar="VOLUME", help="Of a batch, with --dye: amounts for it (500L).  [default: a litre]"
+    ),
+    click.option("--most-water", default="25%", show_default=True, help="Water that may be added, of the batch."),
+)
+
+
 @click.command("check")
 @click.argument("batches", metavar="BATCHES")
 @click.option("--target", required=True, metavar="FILE[:NAME]", help="What the batches are held to.")
-@click.option("--limit", type=float, help="The largest colour difference that passes, under each lamp.")
-@click.option("--tolerance", "tolerance_file", metavar="FILE.toml", help="Limits, lamps, formula and rule from a file.")
-@click.option("--rule", type=click.Choice(RULES), help="How a difference near the limit is judged.  [default: simple]")
-@click.option("--uncertainty", type=float, help="Standard uncertainty of a difference, instead of that of replicates.")
-@click.option("--coverage", type=float, help="Factor k of the expanded uncertainty.  [default: 2]")
-@click.option(
-    "--dye",
-    "dyes",
-    multiple=True,
-    metavar="NAME.dye.json",
-    help="A dye that may be added: say what to add to each batch that is off.",
-)
-@click.option("--path-length", metavar="LENGTH", help="Of the batches' cell, with --dye (10mm).")
-@click.option("--volume", metavar="VOLUME", help="Of a batch, with --dye: amounts for it (500L).  [default: a litre]")
-@click.option("--most-water", default="25%", show_default=True, help="Water that may be added, of the batch.")
-@formula_options
+@holding_options
+@adding_options
+@click.option("--picture", metavar="FILE", help="Draw target beside batch under each lamp (.png, .svg, .pdf).")
 @reading_options
 @viewing_options
 @output_options
 def command(
-    batches: str,
-    target: str,
-    limit: float | None,
-    tolerance_file: str | None,
-    rule: Rule | None,
-    uncertainty: float | None,
-    coverage: float | None,
-    formula: str | None,
-    l_c: str | None,
-    k: str | None,
-    dyes: tuple[str, ...],
-    path_length: str | None,
-    volume: str | None,
-    most_water: str,
-    reading: Reading,
-    viewing: Viewing,
+    batches: str, target: str, holding: Holding, adding: Adding, picture: str | None, reading: Reading, viewing: Viewing,
     output: Output,
-) -> int:
+) -> int:  # fmt: skip
     r"""Judge each batch against a target: pass, fail or undecided, and what is off.
 
     \b
     Example: lamplit check demo_spectra/batches.csv --target demo_spectra/target.csv --limit 1.0 -i D65 -i A
     """
-    stated = {
-        "--limit": limit,
-        "--rule": rule,
-        "--uncertainty": uncertainty,
-        "--coverage": coverage,
-        "--formula": formula,
-        "--cmc": l_c,
-        "--k": k,
-        "--illuminant": viewing.illuminant,
-        "--observer": viewing.observer,
-        "--weights": viewing.weights,
-    }
-    if tolerance_file is not None:
-        refuse_both(stated, f"--tolerance {tolerance_file}")
-        tolerance, conditions = with_lamps(read_tolerance(tolerance_file), viewing, os.path.dirname(tolerance_file))
-    elif limit is not None:
-        limits = dict.fromkeys(viewing.illuminant or ("D65",), limit)
-        plain = Tolerance(
-            limits,
-            formula_from(formula, k, l_c),
-            viewing.observer or "10",
-            viewing.weights or "cie",
-            rule or "simple",
-            2.0 if coverage is None else coverage,
-            uncertainty,
-        )
-        tolerance, conditions = with_lamps(plain, viewing)
-    else:
-        raise InputError("no limit was given", do="give --limit 1.0, or --tolerance FILE.toml")
+    tolerance, conditions = _tolerance(holding, viewing)
     samples, wanted = spectra_from([batches], reading), target_from(target, reading)
     checked = check(samples, wanted, tolerance, conditions)
-    corrections = _corrections(checked, samples, wanted, dyes, path_length, volume, most_water)
+    corrections = _corrections(checked, samples, wanted, adding)
+    if picture is not None:
+        _draw(checked, samples, wanted, picture, output.force)
+    more = {"corrections": correction_rows(checked, corrections)} if adding.dye else {}
     emit(
         output,
         table=lambda: "\n".join((check_table(checked), *corrections_lines(checked, corrections))),
-        content=lambda: (
-            check_object(checked) | ({"corrections": correction_rows(checked, corrections)} if dyes else {})
-        ),
+        content=lambda: check_object(checked) | more,
         rows=lambda: check_rows(checked),
     )
     return 0 if checked.counts()["pass"] == len(checked.names) else 1
 
 
-def _corrections(
-    checked: Checked, samples: Spectra, target: Spectra, dyes: tuple[str, ...], path_length: str | None, volume: str | None,
-    most_water: str,
-) -> list[BatchCorrection]:  # fmt: skip
+def _tolerance(holding: Holding, viewing: Viewing) -> tuple[Tolerance, Conditions]:
+    """From the file, or from the options; never from both."""
+    if holding.tolerance is not None:
+        stated = {f"--{name}": value for name, value in vars(holding).items() if name != "tolerance"}
+        stated |= {"--illuminant": viewing.illuminant, "--observer": viewing.observer, "--weights": viewing.weights}
+        refuse_both(stated, f"--tolerance {holding.tolerance}")
+        return with_lamps(read_tolerance(holding.tolerance), viewing, os.path.dirname(holding.tolerance))
+    if holding.limit is None:
+        raise InputError("no limit was given", do="give --limit 1.0, or --tolerance FILE.toml")
+    plain = Tolerance(
+        dict.fromkeys(viewing.illuminant or ("D65",), holding.limit),
+        formula_from(holding.formula, holding.k, holding.cmc),
+        viewing.observer or "10",
+        viewing.weights or "cie",
+        holding.rule or "simple",
+        2.0 if holding.coverage is None else holding.coverage,
+        holding.uncertainty,
+    )
+    return with_lamps(plain, viewing)
+
+
+def _corrections(checked: Checked, samples: Spectra, target: Spectra, adding: Adding) -> list[BatchCorrection]:
     """What to add to each batch that did not pass; nothing without dyes."""
-    if not dyes:
+    if not adding.dye:
         return []
     from chroma.batch_corrections import batch_corrections
     from chroma.cli.dye_inputs import dyes_from, percent
     from chroma.units import path_length_mm, volume_L
 
-    if path_length is None:
+    if adding.path_length is None:
         raise InputError(
             "--dye without --path-length", why="how much to add depends on the cell", do="give --path-length 10mm"
         )
     return batch_corrections(
-        checked, samples, target, dyes_from(dyes), path_length_mm=path_length_mm(path_length),
-        volume_L=None if volume is None else volume_L(volume), most_water=percent(most_water),
+        checked, samples, target, dyes_from(adding.dye), path_length_mm=path_length_mm(adding.path_length),
+        volume_L=None if adding.volume is None else volume_L(adding.volume), most_water=percent(adding.most_water),
     )  # fmt: skip
+
+
+def _draw(checked: Checked, samples: Spectra, target: Spectra, path: str, force: bool) -> None:
+    from chroma.colours import predict
+    from chroma.report.pictures import save
+    from chroma.report.plots import plot_swatches
+
+    pair = predict(target, checked.conditions), predict(samples, checked.conditions)
+    save(plot_swatches(checked, *pair), path, force=force)

@@ -1,26 +1,69 @@
-"""``lamplit demo``: the whole job on invented spectra of fountain water."""
+"""``lamplit demo``: the whole job on invented spectra of fountain water, by the program's own commands."""
 
 from __future__ import annotations
 
+import shlex
 import shutil
 from pathlib import Path
 
 import click
 
-from chroma.batches import Checked, check
-from chroma.cli.inputs import spectra_from, target_from, with_lamps
-from chroma.cli.options import Reading, Viewing
-from chroma.colours import Colours, predict
-from chroma.report.check_report import check_rows, check_table
-from chroma.report.colour_report import colour_rows, colours_table, flat
-from chroma.report.spectra_report import spectra_table
-from chroma.spectra import ABSORBANCE_LIMIT, Spectra
-from chroma.tolerance import Tolerance, read_tolerance
 from observers.errors import InputError
 
-PLAIN = Reading(None, None, None, None, None, ABSORBANCE_LIMIT)
-COUNTS = Reading(None, "blank", "dark", None, None, ABSORBANCE_LIMIT)
-NO_VIEW = Viewing((), None, None, "nearest", False)
+# Each step: what it shows, and the command as a person would type it; {demo} is the folder of the invented files.
+STEPS = (
+    (
+        "Three samples as raw counts, with their blank and dark reading",
+        "spectra {demo}/counts.csv --blank blank --dark dark",
+    ),
+    (
+        "What the water of the target looks like, by day and under two lamps",
+        "predict --spectra {demo}/target.csv -i D65 -i A -i {demo}/garden_lamp.spdx --out {out}/colours.csv",
+    ),
+    (
+        "A blue dye from its dilution series; the blank was read against air",
+        "dye fit {demo}/heron_series.txt --concentrations {demo}/heron_concentrations.csv --blank blank --path-length 10mm "
+        "--stray-light fit --out {out}/heron.dye.json --picture {out}/heron.png",
+    ),
+    (
+        "A yellow dye",
+        "dye fit {demo}/broom_series.jdx --concentrations {demo}/broom_concentrations.csv --path-length 10mm "
+        "--out {out}/broom.dye.json --picture {out}/broom.png",
+    ),
+    (
+        "A red dye that pairs at high concentration: Beer's law does not hold to the top",
+        "dye fit {demo}/rowan_series.csv --concentrations {demo}/rowan_concentrations.csv --path-length 10mm "
+        "--out {out}/rowan.dye.json --picture {out}/rowan.png",
+    ),
+    (
+        "A recipe for the target that holds under two lamps",
+        "match --target {demo}/target.csv --dye {out}/heron.dye.json --dye {out}/broom.dye.json --dye {out}/rowan.dye.json "
+        "--path-length 10mm -i D65 -i A",
+    ),
+    (
+        "The same water from weak to strong, and where its hue turns",
+        "predict --dye {out}/heron.dye.json=6.5mg/L --dye {out}/broom.dye.json=5mg/L --path-length 10mm "
+        "--sweep strength=0.1:2:7 --picture {out}/sweep.png",
+    ),
+    (
+        "Twenty batches against the target, and what to add to 500 L of each that is off",
+        "check {demo}/batches.csv --target {demo}/target.csv --tolerance {demo}/tolerance.toml --dye {out}/heron.dye.json "
+        "--dye {out}/broom.dye.json --path-length 10mm --volume 500L --out {out}/verdicts.csv --picture {out}/swatches.png",
+    ),
+    (
+        "What is in them",
+        "unmix {demo}/batches.csv --dye {out}/heron.dye.json --dye {out}/broom.dye.json --dye {out}/rowan.dye.json "
+        "--path-length 10mm --out {out}/composition.csv",
+    ),
+)
+LOOK_AT = """
+Look at:
+  {out}/swatches.png     target beside batch under each lamp: HB-08 and HB-17 match by day only
+  {out}/rowan.png        a series that bends: its residuals show the dye pairing
+  {out}/sweep.png        a ladder of strengths, and the path it takes in a*b* and in x, y
+  {out}/verdicts.csv     the verdicts as data; composition.csv: what is in each batch
+  {out}/demo_spectra/    the invented files; every command above can be run on them
+All of it is invented. Handle dyes by their safety data sheets; let dyed water out only as local codes allow."""
 
 
 def demo_folder() -> Path:
@@ -35,7 +78,8 @@ def demo_folder() -> Path:
 @click.command("demo")
 @click.argument("folder", metavar="[DIR]", default="fountain-demo")
 @click.option("--force", is_flag=True, help="Write into a folder that is there.")
-def command(folder: str, force: bool) -> None:
+@click.pass_context
+def command(ctx: click.Context, folder: str, force: bool) -> None:
     r"""Run the whole job on invented spectra of fountain water, and say what to look at.
 
     Copies the spectra to DIR (fountain-demo if none is given), so that every command can be tried on them.
@@ -46,60 +90,13 @@ def command(folder: str, force: bool) -> None:
     place = Path(folder)
     if place.exists() and not force:
         raise InputError("is there already", where=folder, do="name another folder, or give --force")
-    world = place / "demo_spectra"
-    shutil.copytree(demo_folder(), world, dirs_exist_ok=True, ignore=shutil.ignore_patterns("__pycache__", "*.py"))
-
-    _say(
-        "1. Three samples as raw counts, with their blank and dark reading",
-        f"lamplit spectra {world}/counts.csv --blank blank --dark dark",
-    )
-    counts = spectra_from([str(world / "counts.csv")], COUNTS)
-    click.echo(spectra_table(counts))
-
-    _say(
-        "2. What the water of the target looks like, by day and under two lamps",
-        f"lamplit predict --spectra {world}/target.csv -i D65 -i A -i {world}/garden_lamp.spdx",
-    )
-    target, batches = target_from(str(world / "target.csv"), PLAIN), spectra_from([str(world / "batches.csv")], PLAIN)
-    lamps = dict.fromkeys(("D65", "A", str(world / "garden_lamp.spdx")), 1.0)
-    _, seen = with_lamps(Tolerance(lamps), NO_VIEW)
-    colours = predict(target, seen)
-    click.echo(colours_table(colours))
-
-    _say(
-        "3. Twenty batches against the target",
-        f"lamplit check {world}/batches.csv --target {world}/target.csv --tolerance {world}/tolerance.toml",
-    )
-    tolerance, conditions = with_lamps(read_tolerance(str(world / "tolerance.toml")), NO_VIEW)
-    checked = check(batches, target, tolerance, conditions)
-    click.echo(check_table(checked))
-
-    _write(place, colours, checked, target, batches, force)
-
-
-def _say(title: str, line: str) -> None:
-    click.echo(f"\n{title}\n$ {line}")
-
-
-def _write(place: Path, colours: Colours, checked: Checked, target: Spectra, batches: Spectra, force: bool) -> None:
-    """Write data and pictures, and end with what to look at."""
-    from chroma.readers.write import write_rows
-    from chroma.report.pictures import save
-    from chroma.report.plots import plot_spectra, plot_swatches
-
-    write_rows(flat(colour_rows(colours)), str(place / "colours.csv"), force=force)
-    write_rows(check_rows(checked), str(place / "verdicts.csv"), force=force)
-    save(
-        plot_spectra(target, ax=plot_spectra(batches), emphasise=target.names[0]),
-        str(place / "spectra.png"),
-        force=force,
-    )
-    swatches = plot_swatches(checked, predict(target, checked.conditions), predict(batches, checked.conditions))
-    save(swatches, str(place / "swatches.png"), force=force)
-    click.echo(
-        f"\nLook at:\n  {place}/swatches.png   target beside batch under each lamp: HB-08 and HB-17 match by day only\n"
-        f"  {place}/spectra.png    why: their curves cross the others\n"
-        f"  {place}/verdicts.csv   the same verdicts as data\n"
-        f"  {place}/demo_spectra/  the invented files; every command above can be run on them\n"
-        "All of it is invented. Dyed water is let out only as local codes allow."
-    )
+    leave_out = shutil.ignore_patterns("__pycache__", "*.py", "pictures")
+    shutil.copytree(demo_folder(), place / "demo_spectra", dirs_exist_ok=True, ignore=leave_out)
+    assert ctx.parent is not None
+    group = ctx.parent.command
+    for number, (title, text) in enumerate(STEPS, 1):
+        line = text.format(demo=(place / "demo_spectra").as_posix(), out=place.as_posix())
+        click.echo(f"\n{number}. {title}\n$ lamplit {line}")
+        arguments = shlex.split(line) + (["--force"] if force else [])
+        group.main(arguments, prog_name="lamplit", standalone_mode=False)
+    click.echo(LOOK_AT.format(out=place.as_posix()))

@@ -139,9 +139,13 @@ def _stem(path: str) -> str:
 
 def _stamp() -> dict[str, str]:
     """When and by which program a file was made."""
+    import os
     from datetime import UTC, datetime
 
-    return {"created": datetime.now(UTC).isoformat(timespec="seconds"), "program": PROGRAM}
+    # Set where output is to be the same each time, as reproducible-builds.org has it.
+    epoch = os.environ.get("SOURCE_DATE_EPOCH", "")
+    now = datetime.fromtimestamp(int(epoch), UTC) if epoch.isdecimal() else datetime.now(UTC)
+    return {"created": now.isoformat(timespec="seconds"), "program": PROGRAM}
 
 
 def _write(dye: Dye, output: Output) -> None:

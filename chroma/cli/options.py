@@ -51,7 +51,7 @@ class Output:
     force: bool
 
 
-def _gathered(kind: type, argument: str, *options: Command) -> Callable[[Command], Command]:
+def gathered(kind: type, argument: str, *options: Command) -> Callable[[Command], Command]:
     """A decorator that adds options to a command and hands their values over as one object."""
     names = [field.name for field in fields(kind)]
 
@@ -68,7 +68,7 @@ def _gathered(kind: type, argument: str, *options: Command) -> Callable[[Command
     return decorate
 
 
-reading_options = _gathered(
+reading_options = gathered(
     Reading,
     "reading",
     click.option(
@@ -93,7 +93,7 @@ reading_options = _gathered(
     ),
 )
 
-viewing_options = _gathered(
+viewing_options = gathered(
     Viewing,
     "viewing",
     click.option(
@@ -117,7 +117,7 @@ viewing_options = _gathered(
     click.option("--bandpass", is_flag=True, help="Undo a triangular bandpass as wide as the step of the grid."),
 )
 
-output_options = _gathered(
+output_options = gathered(
     Output,
     "output",
     click.option("--json", is_flag=True, help="Print one JSON object instead of the table."),

@@ -13,7 +13,6 @@ from typing import Literal, get_args
 
 import numpy as np
 
-from chroma.calibration import quantile
 from chroma.dye.model import Dye
 from chroma.dye.shared import shared
 from chroma.dye.solution import LN10, Shelf
@@ -28,6 +27,7 @@ BASELINES: tuple[Baseline, ...] = get_args(Baseline)
 ROUNDS = 3  # of reweighting with the fitted absorbance
 RISK = 0.01  # of calling a clean cell dirty
 SMOOTH_TERMS = 10  # cosines that stand for "a band of something else"; a dye's band spans two or three of them
+UNTOLD = 1e-9  # a singular value this small against the largest is rounding
 ALIKE = 0.995  # cosine between two dyes' weighted spectra above which they cannot be told apart in practice
 
 
@@ -165,8 +165,7 @@ def _unmix_one(
             sigma = _noise(residual * 10.0**-fitted * LN10, usable)
     whitened = columns * scale[:, None]
     free, _, _, _ = np.linalg.lstsq(whitened, A * scale, rcond=None)
-    u = _uncertainty(whitened, scale, A - columns @ free, stock, solution[:dyes], path_length_mm)
-    half = quantile((1 + confidence) / 2, np.count_nonzero(usable) - unknowns) * u
+    half = _half_widths(whitened, scale, A - columns @ free, stock, solution[:dyes], path_length_mm, confidence)
     p, at = _foreign(residual * scale, whitened, _shared(stock, solution[:dyes], path_length_mm) * scale, usable)
     low, high = np.maximum(free[:dyes] - half, 0), np.maximum(free[:dyes] + half, 0)
     return _One(solution[:dyes], low, high, solution[dyes:], np.where(usable, residual, 0.0), sigma, p, at)
@@ -199,14 +198,37 @@ def _shared(stock: Shelf, c: Array, path_length_mm: float) -> Array:
     return np.concatenate([amount * cm * dye.common for amount, dye in zip(c, stock.dyes, strict=True)])
 
 
-def _uncertainty(X: Array, scale: Array, residual: Array, stock: Shelf, c: Array, path_length_mm: float) -> Array:
-    """(D,) standard uncertainties: noise, widened where the residual is larger than it, and the dyes' shared errors."""
+def _half_widths(
+    X: Array, scale: Array, residual: Array, stock: Shelf, c: Array, path_length_mm: float, confidence: float
+) -> Array:
+    """(D,) half widths of the intervals: noise, widened where the residual is larger than it, and the dyes' shared errors.
+
+    The factor is Student's t at the effective degrees of freedom of Welch and Satterthwaite (JCGM 100, G.4): the noise
+    is known from all bands, what a dye's bands share only from as many numbers as its series had standards.
+    """
+    from scipy.special import stdtrit
+
     freedom = np.count_nonzero(scale) - X.shape[1]
-    excess = max(float(((residual * scale) ** 2).sum()) / freedom, 1.0)
-    inverse = np.linalg.pinv(X.T @ X)
-    carried = inverse @ X.T @ (_shared(stock, c, path_length_mm) * scale).T
-    variance = np.diag(inverse) * excess + (carried**2).sum(axis=1)
-    result: Array = np.sqrt(variance[: len(stock.dyes)])
+    inverse, dyes = _inverse(X), len(stock.dyes)
+    noise = np.diag(inverse)[:dyes] * max(float(((residual * scale) ** 2).sum()) / freedom, 1.0)
+    gain = inverse[:dyes] @ X.T * scale
+    cm = path_length_mm / 10
+    by_dye = np.stack(
+        [((gain @ (amount * cm * dye.common).T) ** 2).sum(axis=1) for amount, dye in zip(c, stock.dyes, strict=True)]
+    )
+    each = np.array([dye.freedom for dye in stock.dyes])
+    variance = noise + by_dye.sum(axis=0)
+    effective = variance**2 / (noise**2 / freedom + (by_dye**2 / each[:, None]).sum(axis=0))
+    result: Array = stdtrit(effective, (1 + confidence) / 2) * np.sqrt(variance)
+    return result
+
+
+def _inverse(X: Array) -> Array:
+    """The inverse of XᵀX; directions that the data do not tell apart come out as good as unknown, not as known."""
+    size = np.maximum(np.sqrt((X**2).sum(axis=0)), 1e-300)
+    _, s, V = np.linalg.svd(X / size, full_matrices=False)
+    rows = V / np.maximum(s, UNTOLD * s[0])[:, None] / size
+    result: Array = rows.T @ rows
     return result
 
 

@@ -78,14 +78,16 @@ def read_down(sheet: Sheet, region: Region, head: Head, columns: tuple[int, ...]
 
 def _names_row(column: Array) -> bool:
     """Whether the first row of numbers is a row of names: its own wavelength is none, or runs the wrong way."""
+    if column[0] < 0:  # a slip of the pen, which is refused later with its line
+        return False
     if len(column) < 4:
-        return bool(np.isnan(column[0]) or column[0] <= 0)
+        return bool(np.isnan(column[0]) or column[0] == 0)
     steps = np.diff(column[1:])
     if not (np.all(steps > 0) or np.all(steps < 0)):
         return False
     wrong_way = np.sign(column[1] - column[0]) != np.sign(steps[0])
     far = column[1:].min() >= 100 and not 100 <= column[0] <= 1e6
-    return bool(np.isnan(column[0]) or column[0] <= 0 or wrong_way or far)
+    return bool(np.isnan(column[0]) or column[0] == 0 or wrong_way or far)
 
 
 def _one_down(sheet: Sheet, head: Head, rows: list[int], block: Array, start: int, given: list[str]) -> Table:

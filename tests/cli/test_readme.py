@@ -1,15 +1,26 @@
 import re
-import sys
 
 import pytest
-
-sys.path.insert(0, str(__import__("pathlib").Path(__file__).resolve().parents[1]))
 import readme
 
+TRANSCRIPTS = readme.transcripts()
 
-@pytest.mark.parametrize(("command", "printed"), readme.transcripts(), ids=lambda text: text[:60].split("\n")[0])
-def test_a_transcript_is_what_the_command_prints(command, printed):
-    assert readme.printed_by(command) == printed
+
+@pytest.fixture(scope="module")
+def printed():
+    return readme.printed_by([command for command, _ in TRANSCRIPTS])
+
+
+@pytest.mark.parametrize("number", range(len(TRANSCRIPTS)), ids=lambda i: TRANSCRIPTS[i][0][:50])
+def test_a_transcript_is_what_the_command_prints(printed, number):
+    assert printed[number] == TRANSCRIPTS[number][1]
+
+
+def test_every_command_has_a_transcript():
+    from chroma.cli import COMMANDS
+
+    shown = {command.split()[1] for command, _ in TRANSCRIPTS}
+    assert set(COMMANDS) - {"demo"} <= shown
 
 
 def test_the_python_example_runs(monkeypatch, capsys):
