@@ -24,7 +24,14 @@ from chroma.cli.options import (
 from chroma.cli.output import emit
 from chroma.decision import RULES, Rule
 from chroma.difference.formulas import FORMULAS
-from chroma.report.check_report import check_object, check_rows, check_table, correction_rows, corrections_lines
+from chroma.report.check_report import (
+    check_object,
+    check_rows,
+    check_table,
+    correction_rows,
+    corrections_lines,
+    strength_rows,
+)
 from chroma.tolerance import Tolerance, read_tolerance
 from chroma.viewing import Conditions
 from observers.errors import InputError
@@ -32,6 +39,7 @@ from observers.errors import InputError
 if TYPE_CHECKING:
     from chroma.batch_corrections import BatchCorrection
     from chroma.spectra import Spectra
+    from chroma.strength import Strength
 
 
 @dataclass(frozen=True)
@@ -96,12 +104,17 @@ adding_options = gathered(
 @click.option("--target", required=True, metavar="FILE[:NAME]", help="What the batches are held to.")
 @holding_options
 @adding_options
+@click.option(
+    "--strength",
+    is_flag=True,
+    help="Relative strength too, at the peak and summed: absorbance, or K/S.",
+)
 @click.option("--picture", metavar="FILE", help="Draw target beside batch under each lamp (.png, .svg, .pdf).")
 @reading_options
 @viewing_options
 @output_options
 def command(
-    batches: str, target: str, holding: Holding, adding: Adding, picture: str | None, reading: Reading, viewing: Viewing,
+    batches: str, target: str, holding: Holding, adding: Adding, strength: bool, picture: str | None, reading: Reading, viewing: Viewing,
     output: Output,
 ) -> int:  # fmt: skip
     r"""Judge each batch against a target: pass, fail or undecided, and what is off.
@@ -115,10 +128,12 @@ def command(
     corrections = _corrections(checked, samples, wanted, adding)
     if picture is not None:
         _draw(checked, samples, wanted, picture, output.force)
+    strong = _strength(samples, wanted) if strength else None
     more = {"corrections": correction_rows(checked, corrections)} if adding.dye else {}
+    more |= {"strength": strength_rows(checked, strong)} if strong is not None else {}
     emit(
         output,
-        table=lambda: "\n".join((check_table(checked), *corrections_lines(checked, corrections))),
+        table=lambda: "\n".join((check_table(checked, strong), *corrections_lines(checked, corrections))),
         content=lambda: check_object(checked) | more,
         rows=lambda: check_rows(checked),
     )
@@ -162,6 +177,12 @@ def _corrections(checked: Checked, samples: Spectra, target: Spectra, adding: Ad
         checked, samples, target, dyes_from(adding.dye), path_length_mm=path_length_mm(adding.path_length),
         volume_L=None if adding.volume is None else volume_L(adding.volume), most_water=percent(adding.most_water),
     )  # fmt: skip
+
+
+def _strength(samples: Spectra, target: Spectra) -> Strength:
+    from chroma.batch_strength import batch_strength
+
+    return batch_strength(target, samples)
 
 
 def _draw(checked: Checked, samples: Spectra, target: Spectra, path: str, force: bool) -> None:

@@ -16,6 +16,7 @@ from chroma.version import PROGRAM
 from observers.errors import InputError
 
 if TYPE_CHECKING:
+    from chroma.calibration import ReadBack
     from chroma.dye.model import Dye
     from chroma.dye.series import Series
     from chroma.spectra import Source
@@ -86,18 +87,33 @@ def fit(
 
 @command.command("show")
 @click.argument("file", metavar="NAME.dye.json")
+@click.option("--absorbance", type=float, help="Read the concentration of this absorbance off the line at the peak.")
+@click.option(
+    "--readings", type=click.IntRange(1), default=1, show_default=True, help="Readings behind that absorbance."
+)
 @click.option("--json", "wants_json", is_flag=True, help="Print one JSON object instead of the table.")
-def show(file: str, wants_json: bool) -> None:
-    r"""Show what a dye's file holds, and where it came from.
+def show(file: str, absorbance: float | None, readings: int, wants_json: bool) -> None:
+    r"""Show what a dye's file holds, and where it came from; read a concentration off its calibration line.
 
     \b
-    Example: lamplit dye show rowan.dye.json
+    Example: lamplit dye show rowan.dye.json --absorbance 0.35
     """
     from chroma.dye.files import dye_object, read_dye
-    from chroma.report.dye_tables import dye_table
+    from chroma.report.dye_tables import dye_table, read_back_line, read_back_row
 
     dye = read_dye(file)
-    click.echo(as_json(dye_object(dye)) if wants_json else dye_table(dye))
+    back = None if absorbance is None else _read_back(dye, absorbance, readings)
+    if wants_json:
+        click.echo(as_json(dye_object(dye) | ({} if back is None else {"read_back": read_back_row(back)})))
+    else:
+        click.echo(dye_table(dye) if back is None else read_back_line(dye, absorbance or 0.0, readings, back))
+
+
+def _read_back(dye: Dye, absorbance: float, readings: int) -> ReadBack:
+    from chroma.calibration import read_back
+    from chroma.dye.build import line_from
+
+    return read_back(line_from(dye.findings.get("calibration") or {}), absorbance, readings=readings)
 
 
 def _series(

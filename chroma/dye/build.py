@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any, cast
@@ -16,6 +17,8 @@ from chroma.dye.series import Series
 from chroma.spectra import Source
 from observers.arrays import Array
 from observers.errors import InputError
+
+LINE_FIELDS = ("slope", "intercept", "residual_standard_deviation", "x_mean", "y_mean", "Sxx", "total_weight", "r")
 
 
 @dataclass(frozen=True, eq=False)
@@ -138,6 +141,10 @@ def _line_row(line: Line, peak_nm: float) -> dict[str, Any]:
         "residual_standard_deviation": line.s,
         "r": line.r,
         "points": line.freedom + 2,
+        "x_mean": line.x_mean,
+        "y_mean": line.y_mean,
+        "Sxx": line.Sxx,
+        "total_weight": line.total,
         **{key: value if np.isfinite(value) else None for key, value in limits.items()},
     }
 
@@ -155,3 +162,14 @@ def _refuse_negative(data: Series, found: Fitted) -> None:
             why="a dye cannot give light",
             do="check the blank and that concentrations belong to their readings, or fit with --intercept",
         )
+
+
+def line_from(found: Mapping[str, Any]) -> Line:
+    """The calibration line from the findings of a dye's file; raises InputError when it holds none."""
+    try:
+        points = int(found["points"])
+        numbers = [float(found[key]) for key in LINE_FIELDS]
+    except (KeyError, TypeError, ValueError):
+        raise InputError("the dye's file holds no calibration line", do="fit the dye again") from None
+    slope, intercept, s, x_mean, y_mean, Sxx, total, r = numbers
+    return Line(slope, intercept, s, points - 2, x_mean, y_mean, Sxx, total, r)

@@ -16,6 +16,7 @@ from chroma.tolerance import COMPONENTS
 
 if TYPE_CHECKING:
     from chroma.batch_corrections import BatchCorrection
+    from chroma.strength import Strength
 
 
 def check_rows(checked: Checked) -> list[Row]:
@@ -74,12 +75,18 @@ def _metamerism_rows(checked: Checked) -> list[Row]:
     ]
 
 
-def check_table(checked: Checked) -> str:
+def check_table(checked: Checked, strong: Strength | None = None) -> str:
     """One line a batch: verdict, ΔE under each lamp, what is off; then the summary and what it rests on."""
     lamps = [lamp.name for lamp in checked.conditions.illuminants]
     header = ["batch", "verdict", *(f"dE {lamp}" for lamp in lamps), "what is off"]
+    peak = [] if strong is None else [f"strength % at {strong.peak_nm:g} nm", "summed"]
     rows = [
-        [name, WORDS[checked.worst[i]], *(_delta(checked, i, j) for j in range(len(lamps))), _remark(checked, i)]
+        [
+            *(name, WORDS[checked.worst[i]]),
+            *(_delta(checked, i, j) for j in range(len(lamps))),
+            *([] if strong is None else [f"{strong.at_peak[i]:.1f}", f"{strong.summed[i]:.1f}"]),
+            _remark(checked, i),
+        ]
         for i, name in enumerate(checked.names[:MOST_ROWS])
     ]
     limits = ", ".join(f"{lamp} {limit:g}" for lamp, limit in zip(lamps, checked.limits, strict=True))
@@ -90,7 +97,7 @@ def check_table(checked: Checked) -> str:
     )
     return joined_lines(
         f"Target {checked.target}; {checked.tolerance.formula}; limits {limits}{signed}; rule {checked.tolerance.rule}",
-        aligned(header, rows),
+        aligned([*header[:-1], *peak, header[-1]], rows),
         cut_line(len(checked.names)),
         summary,
         conditions_line(str(checked.conditions)),
@@ -136,6 +143,19 @@ def corrections_lines(checked: Checked, corrections: Sequence[BatchCorrection]) 
         )
         lines.append(notes([f"{checked.names[one.row]}: {said}{one.said}"]))
     return [*lines, CAUTION]
+
+
+def strength_rows(checked: Checked, strong: Strength) -> list[Row]:
+    """Relative strength of each batch in per cent."""
+    return [
+        {
+            "name": name,
+            "at_peak_percent": float(strong.at_peak[i]),
+            "summed_percent": float(strong.summed[i]),
+            "peak_nm": strong.peak_nm,
+        }
+        for i, name in enumerate(checked.names)
+    ]
 
 
 def correction_rows(checked: Checked, corrections: Sequence[BatchCorrection]) -> list[Row]:

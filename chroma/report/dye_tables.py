@@ -6,8 +6,11 @@ from typing import Any
 
 import numpy as np
 
+from chroma.calibration import ReadBack
+from chroma.dye.linearity import RISK
 from chroma.dye.model import Dye
 from chroma.dye.unmix import Unmixed
+from chroma.report.rows import number
 from chroma.report.text import aligned, joined_lines, notes, sources_line
 
 
@@ -63,11 +66,21 @@ def _linearity(found: dict[str, Any], dye: Dye) -> str:
         [
             aligned(["standard", dye.unit, "off the line %", "u %"], rows),
             said,
+            *_bent_windows(found),
             shape,
             f"errors found: {100 * found['concentration_error']:.2g} % of a concentration, {found['offset_error']:.2g} in absorbance "
             f"of a baseline, {found['photometric_noise']:.2g} in transmittance of noise",
         ]
     )
+
+
+def _bent_windows(found: dict[str, Any]) -> list[str]:
+    """Bands of wavelengths whose response bends beyond chance."""
+    bent = [row for row in found["windows"] if row["p"] < RISK]
+    where = ", ".join(
+        f"{row['from_nm']:g}–{row['to_nm']:g} nm by {100 * row['bend_at_highest']:+.1f} %" for row in bent
+    )
+    return [f"lack of fit at the highest standard: {where}"] if bent else []
 
 
 def _shape_at(found: dict[str, Any]) -> str:
@@ -85,6 +98,26 @@ def _calibration(found: dict[str, Any], unit: str) -> str:
         f"(s {found['s_slope']:.2g}) × c, s of a point {found['residual_standard_deviation']:.2g}, r {found['r']:.5f}\n"
         f"by that line alone (DIN 32645, ISO 11843): {limits}"
     )
+
+
+def read_back_line(dye: Dye, absorbance: float, readings: int, back: ReadBack) -> str:
+    """A concentration read off the calibration line, with Fieller's limits, in one sentence."""
+    found = dye.findings["calibration"]
+    outside = "" if dye.range_low <= back.value <= dye.range_high else "; outside the concentrations that were fitted"
+    return (
+        f"{dye.name}: absorbance {absorbance:g} at {found['wavelength_nm']:g} nm in {dye.path_length_mm:g} mm (mean of "
+        f"{readings}) is {back.value:.4g} {dye.unit}, 95 % from {back.low:.4g} to {back.high:.4g} (Fieller){outside}"
+    )
+
+
+def read_back_row(back: ReadBack) -> dict[str, float | None]:
+    """The same as a JSON object."""
+    return {
+        "concentration": number(back.value),
+        "standard_error": number(back.standard_error),
+        "low": number(back.low),
+        "high": number(back.high),
+    }
 
 
 def unmixed_table(found: Unmixed) -> str:

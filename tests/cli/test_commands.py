@@ -283,3 +283,22 @@ def test_demo_runs_the_whole_job(lamplit, tmp_path, monkeypatch):
     }
     assert lamplit("demo").code == 2
     assert lamplit("demo", "--force").code == 0
+
+
+def test_strength_of_batches(lamplit):
+    done = lamplit("check", BATCHES, "--target", TARGET, "--limit", 1, "--strength", "--json")
+    rows = {row["name"]: row for row in done.json["strength"]}
+    assert rows["HB-15"]["summed_percent"] == pytest.approx(86, abs=1)  # made 14 % weak
+    assert rows["HB-18"]["at_peak_percent"] == pytest.approx(113, abs=1)  # made 13 % strong
+    tiles = DEMO / "basin_reflectance.txt"
+    first = lamplit("spectra", tiles, "--json").json["samples"][0]["name"]
+    done = lamplit("check", tiles, "--target", f"{tiles}:{first}", "--limit", 1, "--strength", "--json")
+    assert done.json["strength"][0]["summed_percent"] == pytest.approx(100)
+
+
+def test_a_concentration_is_read_off_the_line(lamplit, dyes):
+    done = lamplit("dye", "show", dyes / "heron.dye.json", "--absorbance", 0.5, "--json").json["read_back"]
+    assert done["low"] < done["concentration"] < done["high"]
+    assert done["concentration"] == pytest.approx(0.5 / 111.7, rel=0.01)
+    assert "(Fieller)" in lamplit("dye", "show", dyes / "heron.dye.json", "--absorbance", 0.5).out
+    assert "outside the concentrations" in lamplit("dye", "show", dyes / "heron.dye.json", "--absorbance", 2.5).out

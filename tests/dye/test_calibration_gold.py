@@ -146,6 +146,24 @@ def test_fieller_is_unbounded_for_a_slope_that_may_be_zero():
     assert detection_limit(fit_line(np.array([0.0, 1, 2, 3]), np.array([0.0, 3, -2, 1]))) == np.inf
 
 
+def test_three_points_make_a_line():
+    assert fit_line(np.array([0.0, 1, 2]), np.array([0.0, 1.1, 1.9])).freedom == 1
+
+
+def test_fieller_is_unbounded_from_where_the_slope_could_be_zero():
+    # The interval of the slope reaches zero when t·s_slope = slope: g = 1.
+    x, noise = np.arange(6.0), np.array([1.0, -1, 0, 0, 1, -1])
+    for slope, bounded in ((2.0, True), (0.65, False)):
+        line = fit_line(x, slope * x + noise)
+        assert (2 > (2.776445 * line.s_slope / line.slope) ** 2 > 1) is not bounded
+        assert np.isfinite(read_back(line, 1.0).high) == bounded
+
+
+def test_the_quantification_limit_takes_5_percent_unless_told_otherwise():
+    assert quantification_limit(din()) == pytest.approx(quantification_limit(din(), alpha=0.05), rel=1e-12)
+    assert quantification_limit(din()) < quantification_limit(din(), alpha=0.01)
+
+
 @pytest.mark.parametrize("x", [[1.0, 2.0], [1.0, 1.0, 1.0]], ids=["two points", "one concentration"])
 def test_no_line_through_too_little(x):
     with pytest.raises(InputError, match="three or more points at two or more"):

@@ -9,6 +9,8 @@ import pytest
 from helpers import ROOT
 
 HEAVY = ("colour", "scipy", "matplotlib", "pandas", "polars", "pyarrow", "openpyxl", "PIL")
+SMALL = "demo_spectra/target.csv"
+LINES = ("--help", f"check {SMALL} --target {SMALL} --limit 1", f"predict --spectra {SMALL} -i A -i FL11")
 UPPER = ("chroma.readers", "chroma.report", "chroma.cli")
 
 
@@ -104,9 +106,12 @@ def test_no_circles():
         "import chroma.batches, chroma.colours, chroma.metamerism, chroma.off_target",
         "import observers.weights",
         "import chroma.readers",
-        "import runpy; sys.argv = ['lamplit', '--help']; runpy.run_module('chroma', run_name='__main__')",
+        *(
+            f"import runpy; sys.argv = ['lamplit', *{line.split()!r}]; runpy.run_module('chroma', run_name='__main__')"
+            for line in LINES
+        ),
     ],
-    ids=["import chroma", "import the jobs", "import observers.weights", "import chroma.readers", "lamplit --help"],
+    ids=["import chroma", "import the jobs", "import observers.weights", "import chroma.readers", *LINES],
 )
 def test_the_start_pulls_in_nothing_heavy(code):
     watch = f"""

@@ -97,6 +97,7 @@ def test_a_mistyped_factor_is_noted(data):
         ("a_fixinc5", "pH TITRATION"),
         ("a_mactab1", "MASS SPECTRUM 'Aflatoxin"),
         ("a_mactab2", "MASS SPECTRUM 'cholesterol"),
+        ("a_coffhd", "GAS CHROMATOGRAPH"),
         ("a_pktab1", "MASS SPECTRUM 'Cholesterol"),
         ("a_pktab2", "MASS SPECTRUM 'eugenol"),
         ("a_xyinc2", "EPR SPECTRUM"),
