@@ -114,8 +114,8 @@ adding_options = gathered(
 @viewing_options
 @output_options
 def command(
-    batches: str, target: str, holding: Holding, adding: Adding, strength: bool, picture: str | None, reading: Reading, viewing: Viewing,
-    output: Output,
+    batches: str, target: str, holding: Holding, adding: Adding, strength: bool, picture: str | None, reading: Reading,
+    viewing: Viewing, output: Output,
 ) -> int:  # fmt: skip
     r"""Judge each batch against a target: pass, fail or undecided, and what is off.
 

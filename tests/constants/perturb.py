@@ -43,7 +43,6 @@ SUBSETS = {
         "difference/test_difference_algebra.py",
         "cross/test_cross_differences.py",
     ),
-    "chroma/difference/metameric_index.py": ("cross/test_cross_files.py", "model/test_model_metamerism.py"),
     "chroma/calibration.py": ("dye/test_calibration_gold.py",),
     "chroma/difference/classic.py": (
         "cross/test_cross_files.py",
