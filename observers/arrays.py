@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
-import numpy as np
-import numpy.typing as npt
+from typing import TYPE_CHECKING, TypeAlias
 
-Array = npt.NDArray[np.float64]
-Mask = npt.NDArray[np.bool_]
-Index = npt.NDArray[np.intp]
-Codes = npt.NDArray[np.int8]
+import numpy as np
+
+if TYPE_CHECKING:
+    import numpy.typing as npt
+
+# Names for annotations only, as text: loading numpy.typing would cost a tenth of the start of a check.
+Array: TypeAlias = "npt.NDArray[np.float64]"
+Mask: TypeAlias = "npt.NDArray[np.bool_]"
+Index: TypeAlias = "npt.NDArray[np.intp]"
+Codes: TypeAlias = "npt.NDArray[np.int8]"
 
 
 def median(values: npt.ArrayLike) -> float:
