@@ -117,3 +117,7 @@ def test_a_white_for_each_lamp_broadcasts():
     XYZ = np.random.default_rng(1).uniform(1, 90, (5, 2, 3))
     both = Lab_from_XYZ(XYZ, np.stack([WHITE, OTHER]))
     np.testing.assert_allclose(both[:, 1], Lab_from_XYZ(XYZ[:, 1], OTHER), rtol=0, atol=1e-12)
+
+
+def test_a_hue_a_rounding_error_below_zero_is_zero():
+    assert LCh_from_Lab(np.array([50.0, 1.0, -1e-17]))[2] == 0.0

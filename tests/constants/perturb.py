@@ -108,6 +108,7 @@ ALLOWED: dict[tuple[str, str, float | None], str] = {
     ("chroma/colour/screen.py", "strength = np.minimum(", None): "a hint of colour in pictures, no number of a result",
     ("chroma/colour/spaces.py", "np.maximum(ratio, DELTA**3)", None): "the last DELTA**3 keeps from dividing by zero",
     ("chroma/colour/dominant.py", "ON_CORNER = 1e-9", 1e-9): "a tolerance for rounding; that it is there is tested",
+    ("chroma/decision.py", "safe_sd, safe = np.where(far", 1.0): "stands in where it is not used",
     ("chroma/decision.py", "FAR = 1e3", 1e3): "where one form gives way to the other; both agree there",
     ("chroma/decision.py", "LARGEST = 1e6", 1e6): "keeps a special function within its range",
     ("chroma/scatter.py", "max(freedom, 1)", 1): "keeps from dividing by zero; the covariance is zero there",
