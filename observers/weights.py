@@ -124,7 +124,8 @@ def _cie_fold(wavelength_nm: Array) -> Array:
 
 def _fine_fold(wavelength_nm: Array) -> Array:
     """Means over each 1 nm step of the straight lines between the points of a fine spectrum, as a matrix."""
-    edges = np.append(STANDARD_NM - 0.5, STANDARD_NM[-1] + 0.5)
+    first, last = STANDARD_NM[0] - 0.5, STANDARD_NM[-1] + 0.5
+    edges = np.linspace(first, last, len(STANDARD_NM) + 1)
     inner = edges[(edges > wavelength_nm[0]) & (edges < wavelength_nm[-1])]
     cuts = np.union1d(wavelength_nm, inner)
     cuts = cuts[(cuts >= edges[0]) & (cuts <= edges[-1])]

@@ -113,6 +113,7 @@ ALLOWED: dict[tuple[str, str, float | None], str] = {
     ("chroma/decision.py", "LARGEST = 1e6", 1e6): "keeps a special function within its range",
     ("chroma/scatter.py", "max(freedom, 1)", 1): "keeps from dividing by zero; the covariance is zero there",
     ("observers/illuminants.py", "if len(own) > 1 and median", 1): "two points or more are asked for before",
+    ("observers/weights.py", "first, last = STANDARD_NM[0]", 0.5): "the outer edges, where no observer sees anything",
     (
         "observers/weights.py",
         "median(steps) < 0.75",
