@@ -183,13 +183,3 @@ def one_sided(tolerance: Tolerance, parts: Array, expanded: Array) -> Codes:
         which = COMPONENTS.index(name)
         worst = np.maximum(worst, decide(sign * parts[..., which], sign * limit, expanded[..., which]))
     return worst
-
-
-def part_under_limit(checked: Checked, key: str, row: int, lamp: int) -> tuple[float, float, int]:
-    """One signed part under its one-sided limit (as ``dL_min``): its value, its U under a guard band, its code."""
-    which = COMPONENTS.index(key.split("_")[0])
-    value = float(checked.parts[row, lamp, which])
-    guard = checked.tolerance.rule == "guard-band" and checked.expanded_parts is not None
-    U = float(checked.expanded_parts[row, lamp, which]) if guard and checked.expanded_parts is not None else 0.0
-    sign = 1.0 if key.endswith("max") else -1.0
-    return value, U, int(decide(np.asarray(sign * value), sign * checked.tolerance.one_sided[key], U))

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from chroma.batches import Checked
+from chroma.batches import BLOCK, Checked
 from chroma.colour.spaces import Lab_from_LCh, LCh_from_Lab
 from chroma.difference.formulas import Formula
 from observers.arrays import Array
@@ -17,44 +17,55 @@ UPWARD = ("yellower", "greener", "bluer", "redder")
 DOWNWARD = ("redder", "yellower", "greener", "bluer")
 
 
-def off_target(checked: Checked, row: int) -> str:
-    """What is off with one batch, under the lamp where it is worst; "on target" where no part is worth a word."""
-    lamp = int(np.argmax(checked.delta_e[row] / checked.limits))
-    words = off_words(
-        checked.tolerance.formula, checked.target_Lab[lamp], checked.Lab[row, lamp], float(checked.limits[lamp])
-    )
-    return ", ".join(words) or "on target"
+def off_targets(checked: Checked, most: int | None = None) -> list[str]:
+    """What is off with each batch (or the first of them), under the lamp where it is worst.
+
+    "On target" where no part is worth a word.
+    """
+    said: list[str] = []
+    count = len(checked.names) if most is None else min(most, len(checked.names))
+    for start in range(0, count, BLOCK):
+        rows = np.arange(start, min(start + BLOCK, count))
+        lamp = np.argmax(checked.delta_e[rows] / checked.limits, axis=1)
+        words = off_words(
+            checked.tolerance.formula, checked.target_Lab[lamp], checked.Lab[rows, lamp], checked.limits[lamp]
+        )
+        said += [", ".join(own) or "on target" for own in words]
+    return said
 
 
-def off_words(formula: Formula, target_Lab: Array, Lab: Array, limit: float) -> list[str]:
-    """Words for a difference between two colours (3,), in order of size in the formula's own units."""
-    neutral = min(np.hypot(*target_Lab[1:]), np.hypot(*Lab[1:])) < NEUTRAL_CHROMA
-    parts = _neutral_parts(target_Lab, Lab) if neutral else _chromatic_parts(target_Lab, Lab)
-    sizes = [float(formula.difference(target_Lab, moved)) for moved, _ in parts]
-    floor = max(WORTH_OF_LIMIT * limit, WORTH_OF_LARGEST * max(sizes))
-    ranked = sorted(zip(sizes, parts, strict=True), key=lambda pair: -pair[0])
-    return [word for size, (_, word) in ranked if size >= floor]
+def off_words(formula: Formula, target_Lab: Array, Lab: Array, limit: Array) -> list[list[str]]:
+    """Words for differences between colours (N, 3) held to limits (N,), in order of size in the formula's own units.
+
+    A size is what the difference would be if only one of lightness, chroma and hue had moved (or L*, a*, b* near grey).
+    """
+    neutral = np.minimum(np.hypot(*target_Lab.T[1:]), np.hypot(*Lab.T[1:])) < NEUTRAL_CHROMA
+    LCh_t, LCh = LCh_from_Lab(target_Lab), LCh_from_Lab(Lab)
+    steps = Lab - target_Lab
+    turned = LCh - LCh_t
+    turned[:, 2] = (turned[:, 2] + 180) % 360 - 180
+    sizes = np.stack([
+        formula.difference(target_Lab, np.where(neutral[:, None], target_Lab + axis * steps, Lab_from_LCh(LCh_t + axis * turned)))
+        for axis in np.eye(3)
+    ], axis=-1)  # fmt: skip
+    floor = np.maximum(WORTH_OF_LIMIT * limit, WORTH_OF_LARGEST * sizes.max(axis=1))
+    quarter = (LCh_t[:, 2] // 90).astype(int) % 4
+    ranks = np.argsort(-sizes, axis=1, kind="stable")
+    return [
+        [
+            _neutral_word(axis, steps[i]) if neutral[i] else _chromatic_word(axis, turned[i], quarter[i])
+            for axis in ranks[i]
+            if sizes[i, axis] >= floor[i]
+        ]
+        for i in range(len(sizes))
+    ]
 
 
-def _neutral_parts(target: Array, Lab: Array) -> list[tuple[Array, str]]:
-    """The target moved along one axis at a time to where the sample is, with the word for that."""
-    step = Lab - target
-    words = (
-        "lighter" if step[0] > 0 else "darker",
-        "redder" if step[1] > 0 else "greener",
-        "yellower" if step[2] > 0 else "bluer",
-    )
-    return [(target + axis * step, word) for axis, word in zip(np.eye(3), words, strict=True)]
+def _neutral_word(axis: int, step: Array) -> str:
+    pairs = (("lighter", "darker"), ("redder", "greener"), ("yellower", "bluer"))
+    return pairs[axis][0 if step[axis] > 0 else 1]
 
 
-def _chromatic_parts(target: Array, Lab: Array) -> list[tuple[Array, str]]:
-    LCh_t, LCh = LCh_from_Lab(target), LCh_from_Lab(Lab)
-    turn = (LCh[2] - LCh_t[2] + 180) % 360 - 180
-    quarter = int(LCh_t[2] // 90) % 4
-    words = (
-        "lighter" if LCh[0] > LCh_t[0] else "darker",
-        "stronger" if LCh[1] > LCh_t[1] else "weaker",
-        UPWARD[quarter] if turn > 0 else DOWNWARD[quarter],
-    )
-    steps = (LCh[0] - LCh_t[0], LCh[1] - LCh_t[1], turn)
-    return [(Lab_from_LCh(LCh_t + axis * step), word) for axis, step, word in zip(np.eye(3), steps, words, strict=True)]
+def _chromatic_word(axis: int, turned: Array, quarter: int) -> str:
+    pairs = (("lighter", "darker"), ("stronger", "weaker"), (UPWARD[quarter], DOWNWARD[quarter]))
+    return pairs[axis][0 if turned[axis] > 0 else 1]

@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING
 from chroma.batches import Checked
 from chroma.decision import WORDS
 from chroma.metamerism import change, special_indices
-from chroma.off_target import off_target
-from chroma.reason import reason, signed_reasons
+from chroma.off_target import off_targets
+from chroma.reason import Grounds, grounds, reason, signed_reasons
 from chroma.report.rows import Row, condition_row, number, source_rows
 from chroma.report.text import CAUTION, MOST_ROWS, aligned, conditions_line, cut_line, joined_lines, notes, sources_line
 from chroma.tolerance import COMPONENTS
+from observers.arrays import Array
 
 if TYPE_CHECKING:
     from chroma.batch_corrections import BatchCorrection
@@ -21,15 +22,15 @@ if TYPE_CHECKING:
 
 def check_rows(checked: Checked) -> list[Row]:
     """One row a batch and lamp, with the fields that design.md names and more."""
-    expanded, within = checked.expanded, checked.within
-    rows = []
-    for i, name in enumerate(checked.names):
-        off, worst = off_target(checked, i), WORDS[checked.worst[i]]
+    expanded, within, verdicts = checked.expanded, checked.within, checked.worst
+    rows, known, limits = [], grounds(checked), checked.limits
+    for i, (name, off) in enumerate(zip(checked.names, off_targets(checked), strict=True)):
+        worst = WORDS[verdicts[i]]
         for j, lamp in enumerate(checked.conditions.illuminants):
             row: Row = {"name": name, "illuminant": lamp.name, "delta_e": float(checked.delta_e[i, j])}
             row |= {key: float(value) for key, value in zip(COMPONENTS, checked.parts[i, j], strict=True)}
-            row |= {"verdict": WORDS[checked.verdicts[i, j]], "limit": float(checked.limits[j])}
-            row |= {"reason": reason(checked, i, j)}
+            row |= {"verdict": WORDS[checked.verdicts[i, j]], "limit": float(limits[j])}
+            row |= {"reason": reason(known, i, j)}
             row |= {"U": None if expanded is None else float(expanded[i, j])}
             row |= {"probability_within": None if within is None else float(within[i, j])}
             rows.append(row | {"batch_verdict": worst, "off": off})
@@ -80,14 +81,15 @@ def check_table(checked: Checked, strong: Strength | None = None) -> str:
     lamps = [lamp.name for lamp in checked.conditions.illuminants]
     header = ["batch", "verdict", *(f"dE {lamp}" for lamp in lamps), "what is off"]
     peak = [] if strong is None else [f"strength % at {strong.peak_nm:g} nm", "summed"]
+    known, indices = grounds(checked), special_indices(checked)
     rows = [
         [
             *(name, WORDS[checked.worst[i]]),
             *(_delta(checked, i, j) for j in range(len(lamps))),
             *([] if strong is None else [f"{strong.at_peak[i]:.1f}", f"{strong.summed[i]:.1f}"]),
-            _remark(checked, i),
+            _remark(known, i, words, indices[i]),
         ]
-        for i, name in enumerate(checked.names[:MOST_ROWS])
+        for i, (name, words) in enumerate(zip(checked.names, off_targets(checked, MOST_ROWS), strict=False))
     ]
     limits = ", ".join(f"{lamp} {limit:g}" for lamp, limit in zip(lamps, checked.limits, strict=True))
     signed = "".join(f", {key} {value:g}" for key, value in checked.tolerance.one_sided.items())
@@ -113,16 +115,15 @@ def _delta(checked: Checked, row: int, lamp: int) -> str:
     return text
 
 
-def _remark(checked: Checked, row: int) -> str:
+def _remark(known: Grounds, row: int, words: str, indices: Array) -> str:
     """What is off, a signed limit that is not kept, and a warning where the match holds under the first lamp only."""
-    words = off_target(checked, row)
-    indices = special_indices(checked)[row]
+    checked = known.checked
     over = [
         f"{lamp.name} {index:.1f}"
         for lamp, index, limit in zip(checked.conditions.illuminants[1:], indices, checked.limits[1:], strict=True)
         if index > limit
     ]
-    signed = [text for lamp in range(len(checked.limits)) for text in signed_reasons(checked, row, lamp)[:1]][:1]
+    signed = [text for lamp in range(len(checked.limits)) for text in signed_reasons(known, row, lamp)[:1]][:1]
     return "; ".join([words, *signed, *([f"metameric: {', '.join(over)}"] if over else [])])
 
 

@@ -82,7 +82,18 @@ def test_reports_know_no_commands(path):
 
 @pytest.mark.parametrize("path", files("chroma/colour") + files("chroma/difference"))
 def test_colours_and_differences_know_no_jobs(path):
-    jobs = ("check", "predict", "metamerism", "off_target", "reason", "scatter", "tolerance", "spectra", "quantity")
+    jobs = (
+        "batches",
+        "colours",
+        "viewing",
+        "metamerism",
+        "off_target",
+        "reason",
+        "scatter",
+        "tolerance",
+        "spectra",
+        "quantity",
+    )
     assert reaches(path, *(f"chroma.{job}" for job in jobs)) == []
 
 

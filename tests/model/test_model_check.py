@@ -8,8 +8,8 @@ from chroma.batches import check, differences
 from chroma.colours import predict
 from chroma.decision import WORDS
 from chroma.difference.formulas import FORMULAS, Formula
-from chroma.off_target import off_target
-from chroma.reason import reason
+from chroma.off_target import off_targets
+from chroma.reason import grounds, reason
 from chroma.spectra import measured
 from chroma.tolerance import COMPONENTS, Tolerance
 from chroma.viewing import conditions
@@ -157,7 +157,7 @@ def test_each_signed_limit_fails_on_its_own_side_and_passes_at_the_limit(compone
         checked = check(BATCHES, TARGET, tolerance, VIEW)
         assert WORDS[checked.verdicts[4, 0]] == word
         if word == "fail":
-            assert reason(checked, 4, 0).startswith(f"{component} {value:+.2f} breaks {component}_{end} ")
+            assert reason(grounds(checked), 4, 0).startswith(f"{component} {value:+.2f} breaks {component}_{end} ")
 
 
 def test_a_signed_limit_has_its_guard_band_too():
@@ -179,13 +179,13 @@ def test_a_signed_limit_is_added_to_the_difference_never_instead_of_it():
 def test_the_reason_says_what_decided(limit, words):
     checked = check(BATCHES, TARGET, held(limit), VIEW)
     row = 1 if limit == 2.0 else 4
-    assert reason(checked, row, 0) == f"ΔE {checked.delta_e[row, 0]:.2f} {words}"
+    assert reason(grounds(checked), row, 0) == f"ΔE {checked.delta_e[row, 0]:.2f} {words}"
 
 
 def test_the_reason_of_an_undecided_batch_gives_its_uncertainty():
     delta_e = check(BATCHES, TARGET, held(), VIEW).delta_e[2]
     checked = check(BATCHES, TARGET, held(delta_e, rule="guard-band", uncertainty=0.1), VIEW)
-    assert reason(checked, 2, 0) == f"ΔE {delta_e[0]:.2f} ± 0.20 is too near the limit {delta_e[0]:g}"
+    assert reason(grounds(checked), 2, 0) == f"ΔE {delta_e[0]:.2f} ± 0.20 is too near the limit {delta_e[0]:g}"
 
 
 # --- what cannot be checked ------------------------------------------------------------------------------------------
@@ -230,7 +230,7 @@ def test_a_lamp_of_ones_own_is_held_to_the_limit_of_its_name():
 
 def test_off_target_in_words():
     checked = check(BATCHES, TARGET, held(), VIEW)
-    assert off_target(checked, 0) == "on target"
-    assert "stronger" in off_target(checked, 4)
-    assert "darker" in off_target(checked, 4) or "stronger" in off_target(checked, 4)
-    assert "weaker" in off_target(checked, 3)
+    assert off_targets(checked)[0] == "on target"
+    assert "stronger" in off_targets(checked)[4]
+    assert "darker" in off_targets(checked)[4] or "stronger" in off_targets(checked)[4]
+    assert "weaker" in off_targets(checked)[3]

@@ -10,8 +10,12 @@ from chroma.off_target import off_words
 PLAIN = Formula("cie1976")
 
 
+def one_off(formula, target, sample, limit):
+    return off_words(formula, target[None], sample[None], np.array([limit]))[0]
+
+
 def words(target_LCh, LCh, limit=0.1, formula=PLAIN):
-    return off_words(formula, Lab_from_LCh(np.array(target_LCh, float)), Lab_from_LCh(np.array(LCh, float)), limit)
+    return one_off(formula, Lab_from_LCh(np.array(target_LCh, float)), Lab_from_LCh(np.array(LCh, float)), limit)
 
 
 @pytest.mark.parametrize(
@@ -59,7 +63,7 @@ def test_lightness_and_chroma_in_words(LCh, word):
 )
 def test_near_greys_a_and_b_are_spoken_of(step, word):
     grey = np.array([60.0, 1.0, -1.0])
-    assert off_words(PLAIN, grey, grey + step, 0.1) == [word]
+    assert one_off(PLAIN, grey, grey + step, 0.1) == [word]
 
 
 def test_a_grey_on_either_side_makes_a_pair_of_greys():
