@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -17,6 +18,9 @@ from chroma.viewing import Conditions
 from observers.arrays import Array, Codes
 from observers.errors import InputError
 from observers.weights import Weights
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 BLOCK = 4096  # batches at a time, so that the intermediate arrays stay in the processor's cache
 
@@ -66,6 +70,17 @@ class Checked:
         return {"batches": len(self.names)} | {
             word: int(np.count_nonzero(worst == code)) for code, word in enumerate(WORDS)
         }
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import checked_html
+
+        return checked_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars, one row a batch and lamp."""
+        from chroma.frames import checked_columns, frame
+
+        return frame(checked_columns(self), library)
 
 
 def check(batches: Spectra, target: Spectra, tolerance: Tolerance, conditions: Conditions) -> Checked:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -14,6 +15,9 @@ from chroma.spectra import Source, Spectra
 from chroma.viewing import Conditions
 from observers.arrays import Array, Mask
 from observers.weights import Weights
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 
 @dataclass(frozen=True, eq=False)
@@ -74,6 +78,17 @@ class Colours:
         )
         nearest = nearest_linear_rgb(linear)
         return [hex_codes(row) for row in nearest], in_gamut(linear)
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import colours_html
+
+        return colours_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars, one row a sample and lamp."""
+        from chroma.frames import colours_columns, frame
+
+        return frame(colours_columns(self), library)
 
 
 def predict(spectra: Spectra, conditions: Conditions) -> Colours:

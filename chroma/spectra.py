@@ -5,12 +5,15 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from typing import Literal, get_args
+from typing import TYPE_CHECKING, Any, Literal, get_args
 
 import numpy as np
 
 from observers.arrays import Array, Index, Mask, frozen
 from observers.errors import InputError
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 Quantity = Literal["transmittance", "reflectance", "absorbance", "counts"]
 QUANTITIES: tuple[Quantity, ...] = get_args(Quantity)
@@ -94,6 +97,25 @@ class Spectra:
     def noted(self, *notes: str) -> Spectra:
         """The same spectra with more notes."""
         return replace(self, notes=self.notes + notes)
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import spectra_html
+
+        return spectra_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars: names, and a column for each wavelength."""
+        from chroma.frames import frame, spectra_columns
+
+        return frame(spectra_columns(self), library)
+
+    @classmethod
+    def from_frame(cls, table: Any, *, quantity: Quantity) -> Spectra:
+        """Spectra from a table of pandas or polars, judged as measured ones are; see `frames.table_of_spectra`."""
+        from chroma.frames import table_of_spectra
+
+        names, wavelength_nm, values, notes = table_of_spectra(table)
+        return measured(names, wavelength_nm, values, quantity, notes=notes)
 
 
 def measured(

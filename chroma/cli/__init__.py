@@ -20,6 +20,8 @@ COMMANDS = {
     "match": ("chroma.cli.match_command", "recipes of dyes that meet a target"),
     "unmix": ("chroma.cli.unmix_command", "what is in a solution that was measured"),
     "check": ("chroma.cli.check_command", "a verdict on each batch against a target"),
+    "photo": ("chroma.cli.photo_command", "concentrations from a photo of cuvettes"),
+    "completion": ("chroma.cli.completion_command", "a script for the shell that completes commands and options"),
     "demo": ("chroma.cli.demo_command", "the whole job on invented spectra of fountain water"),
 }
 
@@ -35,8 +37,9 @@ class Commands(click.Group):
         """The command of that name, or None."""
         if cmd_name not in COMMANDS:
             return None
-        command: click.Command = import_module(COMMANDS[cmd_name][0]).command
-        return command
+        from chroma.cli.common import common
+
+        return common(import_module(COMMANDS[cmd_name][0]).command)
 
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
         """The list for --help, from the table above, so that no command is imported for it."""

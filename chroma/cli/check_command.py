@@ -9,8 +9,10 @@ from typing import TYPE_CHECKING
 import click
 
 from chroma.batches import Checked, check
+from chroma.cli.common import from_file, set_aside
 from chroma.cli.inputs import spectra_from, target_from, with_lamps
 from chroma.cli.options import (
+    FILE,
     Output,
     Reading,
     Viewing,
@@ -42,7 +44,7 @@ if TYPE_CHECKING:
     from chroma.strength import Strength
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Holding:
     """What the batches are held to."""
 
@@ -56,7 +58,7 @@ class Holding:
     k: str | None
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Adding:
     """With which dyes a batch that is off may be put right."""
 
@@ -70,7 +72,7 @@ holding_options = gathered(
     Holding,
     "holding",
     click.option("--limit", type=float, help="The largest colour difference that passes, under each lamp."),
-    click.option("--tolerance", metavar="FILE.toml", help="Limits, lamps, formula and rule from a file."),
+    click.option("--tolerance", type=FILE, metavar="FILE.toml", help="Limits, lamps, formula and rule from a file."),
     click.option(
         "--rule", type=click.Choice(RULES), help="How a difference near the limit is judged.  [default: simple]"
     ),
@@ -88,6 +90,7 @@ adding_options = gathered(
     click.option(
         "--dye",
         multiple=True,
+        type=FILE,
         metavar="NAME.dye.json",
         help="A dye that may be added: say what to add to each batch that is off.",
     ),
@@ -100,8 +103,8 @@ adding_options = gathered(
 
 
 @click.command("check")
-@click.argument("batches", metavar="BATCHES")
-@click.option("--target", required=True, metavar="FILE[:NAME]", help="What the batches are held to.")
+@click.argument("batches", type=FILE, metavar="BATCHES")
+@click.option("--target", type=FILE, required=True, metavar="FILE[:NAME]", help="What the batches are held to.")
 @holding_options
 @adding_options
 @click.option(
@@ -109,7 +112,9 @@ adding_options = gathered(
     is_flag=True,
     help="Relative strength too, at the peak and summed: absorbance, or K/S.",
 )
-@click.option("--picture", metavar="FILE", help="Draw target beside batch under each lamp (.png, .svg, .pdf).")
+@click.option(
+    "--picture", type=FILE, metavar="FILE", help="Draw target beside batch under each lamp (.png, .svg, .pdf)."
+)
 @reading_options
 @viewing_options
 @output_options
@@ -164,6 +169,9 @@ def _tolerance(holding: Holding, viewing: Viewing) -> tuple[Tolerance, Condition
 def _corrections(checked: Checked, samples: Spectra, target: Spectra, adding: Adding) -> list[BatchCorrection]:
     """What to add to each batch that did not pass; nothing without dyes."""
     if not adding.dye:
+        return []
+    if target.quantity == "reflectance" and from_file("dye"):
+        set_aside("dye", "path_length")  # a default shelf is for solutions; asked for by name it is refused below
         return []
     from chroma.batch_corrections import batch_corrections
     from chroma.cli.dye_inputs import dyes_from, percent

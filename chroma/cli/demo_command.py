@@ -8,6 +8,8 @@ from pathlib import Path
 
 import click
 
+from chroma.cli.common import QUIET
+from chroma.cli.progress import rest
 from observers.errors import InputError
 
 # Each step: what it shows, and the command as a person would type it; {demo} is the folder of the invented files.
@@ -87,6 +89,7 @@ def command(ctx: click.Context, folder: str, force: bool) -> None:
     \b
     Example: lamplit demo fountain-demo
     """
+    rest()  # each step has a line of its own
     place = Path(folder)
     if place.exists() and not force:
         raise InputError("is there already", where=folder, do="name another folder, or give --force")
@@ -97,6 +100,8 @@ def command(ctx: click.Context, folder: str, force: bool) -> None:
     for number, (title, text) in enumerate(STEPS, 1):
         line = text.format(demo=(place / "demo_spectra").as_posix(), out=place.as_posix())
         click.echo(f"\n{number}. {title}\n$ lamplit {line}")
-        arguments = shlex.split(line) + (["--force"] if force else [])
+        quiet = ["--quiet"] if ctx.meta.get(QUIET) else []
+        # What is invented is told the same way on every machine, whatever its own defaults are.
+        arguments = [*shlex.split(line), "--no-defaults", *quiet, *(["--force"] if force else [])]
         group.main(arguments, prog_name="lamplit", standalone_mode=False)
     click.echo(LOOK_AT.format(out=place.as_posix()))

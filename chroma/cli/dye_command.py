@@ -9,8 +9,9 @@ import click
 
 from chroma.cli.dye_inputs import base_unit, percent
 from chroma.cli.inputs import read_one
-from chroma.cli.options import Output, Reading, output_options, reading_options
-from chroma.cli.output import as_json
+from chroma.cli.options import FILE, Output, Reading, output_options, reading_options
+from chroma.cli.output import answer, say_written
+from chroma.cli.progress import counted
 from chroma.units import concentration, molar_mass, path_length_mm
 from chroma.version import PROGRAM
 from observers.errors import InputError
@@ -28,9 +29,13 @@ def command() -> None:
 
 
 @command.command("fit")
-@click.argument("series", nargs=-1, required=True, metavar="SERIES…")
+@click.argument("series", type=FILE, nargs=-1, required=True, metavar="SERIES…")
 @click.option(
-    "--concentrations", required=True, metavar="FILE", help="CSV with the columns name, concentration and unit."
+    "--concentrations",
+    type=FILE,
+    required=True,
+    metavar="FILE",
+    help="CSV with the columns name, concentration and unit.",
 )
 @click.option("--path-length", required=True, metavar="LENGTH", help="The cell's path length (10mm).")
 @click.option(
@@ -53,7 +58,7 @@ def command() -> None:
 @click.option(
     "--within", "departure", default="2%", show_default=True, help="The departure from Beer's law that is allowed."
 )
-@click.option("--picture", metavar="FILE", help="Draw series, fit and residuals (.png, .svg, .pdf).")
+@click.option("--picture", type=FILE, metavar="FILE", help="Draw series, fit and residuals (.png, .svg, .pdf).")
 @reading_options
 @output_options
 def fit(
@@ -82,11 +87,11 @@ def fit(
         from chroma.report.pictures import save
 
         save(plot_fit(found), picture, force=output.force)
-    click.echo(as_json(dye_object(found.dye)) if output.json else dye_table(found.dye))
+    answer(output.json, table=lambda: dye_table(found.dye), content=lambda: dye_object(found.dye))
 
 
 @command.command("show")
-@click.argument("file", metavar="NAME.dye.json")
+@click.argument("file", type=FILE, metavar="NAME.dye.json")
 @click.option("--absorbance", type=float, help="Read the concentration of this absorbance off the line at the peak.")
 @click.option(
     "--readings", type=click.IntRange(1), default=1, show_default=True, help="Readings behind that absorbance."
@@ -103,10 +108,11 @@ def show(file: str, absorbance: float | None, readings: int, wants_json: bool) -
 
     dye = read_dye(file)
     back = None if absorbance is None else _read_back(dye, absorbance, readings)
-    if wants_json:
-        click.echo(as_json(dye_object(dye) | ({} if back is None else {"read_back": read_back_row(back)})))
-    else:
-        click.echo(dye_table(dye) if back is None else read_back_line(dye, absorbance or 0.0, readings, back))
+    answer(
+        wants_json,
+        table=lambda: dye_table(dye) if back is None else read_back_line(dye, absorbance or 0.0, readings, back),
+        content=lambda: dye_object(dye) | ({} if back is None else {"read_back": read_back_row(back)}),
+    )
 
 
 def _read_back(dye: Dye, absorbance: float, readings: int) -> ReadBack:
@@ -126,7 +132,7 @@ def _series(
     from chroma.spectra import joined
 
     base, weight = base_unit(unit), None if mass is None else molar_mass(mass)
-    parts = [part for file in files for part in read_one(file, reading)]
+    parts = [part for file in counted(files, "reading file") for part in read_one(file, reading)]
     readings = corrected(joined(parts), blank=reading.blank, dark=reading.dark)
     known, source = read_concentrations(concentrations, unit, base, weight)
     known = {name: value for name, value in known.items() if name not in (reading.blank, reading.dark)}
@@ -173,4 +179,4 @@ def _write(dye: Dye, output: Output) -> None:
         raise InputError(f"a dye's file named {output.out!r}", why="it is JSON", do="name it NAME.dye.json")
     with atomic_write(output.out, output.force) as beside:
         beside.write_text(dye_text(dye), encoding="utf-8")
-    click.echo(f"written: {output.out}", err=True)
+    say_written(output.out)

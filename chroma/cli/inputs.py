@@ -6,23 +6,27 @@ import os
 from collections.abc import Sequence
 from dataclasses import replace
 from types import MappingProxyType
+from typing import TYPE_CHECKING
 
 from chroma.cli.options import Reading, Viewing
+from chroma.cli.progress import counted
 from chroma.quantity import corrected
 from chroma.readers import read_spectra
 from chroma.resample import on_grid
 from chroma.spectra import Spectra, averaged, joined
-from chroma.tolerance import Tolerance
 from chroma.units import grid_nm
 from chroma.viewing import Conditions
 from observers.errors import InputError
 from observers.human import observer
 from observers.illuminants import Illuminant, illuminant, measured_lamp
 
+if TYPE_CHECKING:
+    from chroma.tolerance import Tolerance
+
 
 def spectra_from(files: Sequence[str], reading: Reading, *, grid: str | None = None) -> Spectra:
     """All samples of the files on one grid, replicates averaged, blank and dark taken off."""
-    parts = [part for file in files for part in read_one(file, reading)]
+    parts = [part for file in counted(files, "reading file") for part in read_one(file, reading)]
     if grid is not None:
         parts = [on_grid(part, grid_nm(grid)) for part in parts]
     return corrected(averaged(joined(parts)), blank=reading.blank, dark=reading.dark)

@@ -10,6 +10,7 @@ import numpy as np
 from chroma.cli.dye_inputs import dyes_from
 from chroma.cli.inputs import conditions_from, target_from
 from chroma.cli.options import (
+    FILE,
     Output,
     Reading,
     Viewing,
@@ -26,7 +27,7 @@ from observers.errors import InputError
 
 
 @click.command("match")
-@click.option("--target", metavar="FILE[:NAME]", help="The spectrum to be met.")
+@click.option("--target", type=FILE, metavar="FILE[:NAME]", help="The spectrum to be met.")
 @click.option(
     "--target-lab",
     "target_Lab",
@@ -35,7 +36,13 @@ from observers.errors import InputError
     help="The colour to be met, one for each lamp in turn.",
 )
 @click.option(
-    "--dye", "dyes", multiple=True, required=True, metavar="NAME.dye.json", help="A dye on the shelf; may be repeated."
+    "--dye",
+    "dyes",
+    type=FILE,
+    multiple=True,
+    required=True,
+    metavar="NAME.dye.json",
+    help="A dye on the shelf; may be repeated.",
 )
 @click.option("--path-length", required=True, metavar="LENGTH", help="Of the recipe (25mm).")
 @click.option(

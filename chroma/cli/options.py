@@ -18,8 +18,11 @@ from observers.weights import ENDS, METHODS, Ends, Method
 
 Command = Callable[..., Any]
 
+# A text that a shell completes with the names of files; whether there is one, and may be read, its reader says.
+FILE = click.Path(readable=False)
 
-@dataclass(frozen=True)
+
+@dataclass(frozen=True, eq=False)
 class Reading:
     """How files of spectra are to be read."""
 
@@ -31,7 +34,7 @@ class Reading:
     absorbance_limit: float
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Viewing:
     """Under which lamps, by which observer, with which weights."""
 
@@ -42,7 +45,7 @@ class Viewing:
     bandpass: bool
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Output:
     """Where an answer goes."""
 
@@ -121,7 +124,9 @@ output_options = gathered(
     Output,
     "output",
     click.option("--json", is_flag=True, help="Print one JSON object instead of the table."),
-    click.option("--out", metavar="FILE", help="Write the data: .csv, .parquet, .json or .xlsx (spectra also .jdx)."),
+    click.option(
+        "--out", metavar="FILE", type=FILE, help="Write the data: .csv, .parquet, .json or .xlsx (spectra also .jdx)."
+    ),
     click.option("--force", is_flag=True, help="Overwrite a file that is there."),
 )
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import click
 
 from chroma.cli.inputs import conditions_from, spectra_from
-from chroma.cli.options import Output, Reading, Viewing, output_options, reading_options, viewing_options
+from chroma.cli.options import FILE, Output, Reading, Viewing, output_options, reading_options, viewing_options
 from chroma.cli.output import emit
 from chroma.colours import Colours, predict
 from chroma.report.colour_report import colour_rows, colours_table, flat, inconstancy_rows
@@ -16,10 +16,11 @@ from observers.errors import InputError
 
 
 @click.command("predict")
-@click.option("--spectra", "files", multiple=True, metavar="FILE", help="Measured spectra; may be repeated.")
+@click.option("--spectra", "files", type=FILE, multiple=True, metavar="FILE", help="Measured spectra; may be repeated.")
 @click.option(
     "--dye",
     "dyes",
+    type=FILE,
     multiple=True,
     metavar="NAME.dye.json=CONC",
     help="A dye at a concentration (heron.dye.json=6.5mg/L); may be repeated.",
@@ -51,7 +52,9 @@ from observers.errors import InputError
     help="Refractive index of the walls, or glass, quartz, acrylic, polystyrene.",
 )
 @click.option("--liquid", default="water", show_default=True, help="Refractive index of the liquid, or its name.")
-@click.option("--solvent", metavar="FILE", help="Absorbance of the solvent, one sample, with --solvent-path-length.")
+@click.option(
+    "--solvent", type=FILE, metavar="FILE", help="Absorbance of the solvent, one sample, with --solvent-path-length."
+)
 @click.option(
     "--solvent-path-length",
     metavar="LENGTH",
@@ -59,7 +62,9 @@ from observers.errors import InputError
     show_default=True,
     help="Of the cell the solvent was measured in.",
 )
-@click.option("--picture", metavar="FILE", help="Draw the colours, or ladder and path of a sweep (.png, .svg, .pdf).")
+@click.option(
+    "--picture", type=FILE, metavar="FILE", help="Draw the colours, or ladder and path of a sweep (.png, .svg, .pdf)."
+)
 @reading_options
 @viewing_options
 @output_options

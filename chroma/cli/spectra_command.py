@@ -5,8 +5,8 @@ from __future__ import annotations
 import click
 
 from chroma.cli.inputs import spectra_from
-from chroma.cli.options import Output, Reading, output_options, reading_options
-from chroma.cli.output import as_json
+from chroma.cli.options import FILE, Output, Reading, output_options, reading_options
+from chroma.cli.output import answer, say_written
 from chroma.quantity import at_path_length, converted
 from chroma.report.spectra_report import spectra_object, spectra_table
 from chroma.spectra import QUANTITIES, Quantity
@@ -15,7 +15,7 @@ from observers.errors import InputError
 
 
 @click.command("spectra")
-@click.argument("files", nargs=-1, required=True, metavar="FILE…")
+@click.argument("files", type=FILE, nargs=-1, required=True, metavar="FILE…")
 @reading_options
 @click.option("--to", "wanted", type=click.Choice(QUANTITIES), help="Convert to this quantity.")
 @click.option("--grid", metavar="FIRST:LAST:STEP", help="Resample to this grid (400:700:10nm).")
@@ -47,5 +47,5 @@ def command(
         from chroma.readers.write import write_spectra
 
         write_spectra(spectra, output.out, force=output.force)
-        click.echo(f"written: {output.out}", err=True)
-    click.echo(as_json(spectra_object(spectra)) if output.json else spectra_table(spectra))
+        say_written(output.out)
+    answer(output.json, table=lambda: spectra_table(spectra), content=lambda: spectra_object(spectra))

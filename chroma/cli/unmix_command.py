@@ -6,17 +6,18 @@ import click
 
 from chroma.cli.dye_inputs import dyes_from, percent
 from chroma.cli.inputs import spectra_from
-from chroma.cli.options import Output, Reading, output_options, reading_options
+from chroma.cli.options import FILE, Output, Reading, output_options, reading_options
 from chroma.cli.output import emit
 from chroma.dye.unmix import BASELINES, Baseline, unmix_spectra
 from chroma.units import path_length_mm, wavelength_range_nm
 
 
 @click.command("unmix")
-@click.argument("spectra", nargs=-1, required=True, metavar="SPECTRA…")
+@click.argument("spectra", type=FILE, nargs=-1, required=True, metavar="SPECTRA…")
 @click.option(
     "--dye",
     "dyes",
+    type=FILE,
     multiple=True,
     required=True,
     metavar="NAME.dye.json",

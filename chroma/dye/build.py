@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
-from typing import Any, cast
+from typing import TYPE_CHECKING, Any, cast
 
 import numpy as np
 
@@ -17,6 +17,9 @@ from chroma.dye.series import Series
 from chroma.spectra import Source
 from observers.arrays import Array
 from observers.errors import InputError
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 LINE_FIELDS = ("slope", "intercept", "residual_standard_deviation", "x_mean", "y_mean", "Sxx", "total_weight", "r")
 
@@ -30,6 +33,17 @@ class DyeFit:
     fitted: Fitted
     linearity: Linearity
     line: Line | None
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import fit_html
+
+        return fit_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars, one row a wavelength."""
+        from chroma.frames import fit_columns, frame
+
+        return frame(fit_columns(self), library)
 
 
 def fit_dye(

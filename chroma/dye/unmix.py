@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Literal, get_args
+from typing import TYPE_CHECKING, Any, Literal, get_args
 
 import numpy as np
 
@@ -20,6 +20,9 @@ from chroma.quantity import converted
 from chroma.spectra import Source, Spectra
 from observers.arrays import Array, Mask
 from observers.errors import InputError
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 Baseline = Literal["none", "constant", "linear", "scatter"]
 BASELINES: tuple[Baseline, ...] = get_args(Baseline)
@@ -57,6 +60,17 @@ class Unmixed:
     foreign_nm: Array
     sources: tuple[Source, ...]
     notes: tuple[str, ...]
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import unmixed_html
+
+        return unmixed_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars, one row a sample and dye."""
+        from chroma.frames import frame, unmixed_columns
+
+        return frame(unmixed_columns(self), library)
 
 
 @dataclass(frozen=True, eq=False)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -21,6 +22,9 @@ from chroma.matching.start import coarse_start, spectral_start
 from observers.arrays import Array, Index, frozen
 from observers.errors import InputError
 from observers.weights import Weights
+
+if TYPE_CHECKING:
+    from chroma.frames import Library
 
 TIE = 0.01  # worst ΔE/limit that round to the same hundredth are one for every purpose; cost and number of dyes decide
 UNSEEN = 2e-4  # absorbance at a dye's peak that no bench instrument tells from none: such a dye is not in a recipe
@@ -62,6 +66,17 @@ class Matches:
     reached: bool
     said: str
     notes: tuple[str, ...]
+
+    def _repr_html_(self) -> str:
+        from chroma.notebook import matches_html
+
+        return matches_html(self)
+
+    def to_frame(self, library: Library | None = None) -> Any:
+        """A table of pandas or polars, one row a recipe."""
+        from chroma.frames import frame, matches_columns
+
+        return frame(matches_columns(self), library)
 
 
 def match(

@@ -37,6 +37,14 @@ def lamplit(capsys) -> Callable[..., Ran]:
     return run
 
 
+@pytest.fixture(scope="session", autouse=True)
+def no_defaults_of_ones_own(tmp_path_factory):
+    """Whoever runs the tests may keep a lamplit.toml; it is not meant here."""
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setenv("XDG_CONFIG_HOME", str(tmp_path_factory.mktemp("configuration")))
+        yield
+
+
 @pytest.fixture(scope="session")
 def dyes(tmp_path_factory) -> Path:
     """A folder with the three invented dyes, fitted from their series."""

@@ -25,7 +25,8 @@ def test_version_and_help(lamplit):
 def test_each_command_has_help_with_an_example(lamplit, name):
     done = lamplit(name, "--help")
     assert done.code == 0
-    assert f"Example: lamplit {name}" in done.out or name == "dye"
+    # A group has none of its own; tests/cli/test_examples.py runs those of the commands in it.
+    assert f"Example: lamplit {name}" in done.out or "Commands:" in done.out
 
 
 def test_module_and_program_are_the_same():
