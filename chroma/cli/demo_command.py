@@ -57,12 +57,18 @@ STEPS = (
         "unmix {demo}/batches.csv --dye {out}/heron.dye.json --dye {out}/broom.dye.json --dye {out}/rowan.dye.json "
         "--path-length 10mm --out {out}/composition.csv",
     ),
+    (
+        "How strong three ponds are, from a photo of their cuvettes beside three standards",
+        "photo estimate {demo}/photo/rack.jpg --rack {demo}/photo/rack.csv --dye {out}/heron.dye.json --path-length 10mm "
+        "-i LED-B3 --overlay {out}/photo.png --out {out}/ponds.csv",
+    ),
 )
 LOOK_AT = """
 Look at:
   {out}/swatches.png     target beside batch under each lamp: HB-08 and HB-17 match by day only
   {out}/rowan.png        a series that bends: its residuals show the dye pairing
   {out}/sweep.png        a ladder of strengths, and the path it takes in a*b* and in x, y
+  {out}/photo.png        what was measured in the photo; ponds.csv: how strong they are
   {out}/verdicts.csv     the verdicts as data; composition.csv: what is in each batch
   {out}/demo_spectra/    the invented files; every command above can be run on them
 All of it is invented. Handle dyes by their safety data sheets; let dyed water out only as local codes allow."""

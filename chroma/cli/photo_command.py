@@ -83,7 +83,8 @@ def calibrate(
     r"""Learn from known cuvettes what this phone, lamp and cell do to a dye's colour; --out keeps it.
 
     \b
-    Example: lamplit photo calibrate rack.jpg --rack rack.csv --dye heron.dye.json --path-length 10mm --out phone.cal.json
+    Example: lamplit photo calibrate demo_spectra/photo/rack.jpg --rack demo_spectra/photo/rack.csv --dye heron.dye.json
+    --path-length 10mm -i LED-B3 --out phone.cal.json
     """
     from chroma.photo.calibration import calibrated, calibration_text
     from chroma.photo.estimate import judge_rack, photo_flags, solved_photo
@@ -139,7 +140,8 @@ def estimate_command(
     r"""Estimate the unknowns' concentrations, with 95 % intervals; standards in the photo are used where there are any.
 
     \b
-    Example: lamplit photo estimate rack.jpg --rack rack.csv --dye heron.dye.json --path-length 10mm
+    Example: lamplit photo estimate demo_spectra/photo/rack.jpg --rack demo_spectra/photo/rack.csv --dye heron.dye.json
+    --path-length 10mm -i LED-B3
     """
     from chroma.photo.combine import combined
     from chroma.photo.words import estimate_object, estimate_rows
