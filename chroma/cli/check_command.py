@@ -21,9 +21,10 @@ from chroma.cli.options import (
     output_options,
     reading_options,
     refuse_both,
+    report_option,
     viewing_options,
 )
-from chroma.cli.output import emit
+from chroma.cli.output import emit, say_written
 from chroma.decision import RULES, Rule
 from chroma.difference.formulas import FORMULAS
 from chroma.report.check_report import (
@@ -40,6 +41,7 @@ from observers.errors import InputError
 
 if TYPE_CHECKING:
     from chroma.batch_corrections import BatchCorrection
+    from chroma.colours import Colours
     from chroma.spectra import Spectra
     from chroma.strength import Strength
 
@@ -115,12 +117,15 @@ adding_options = gathered(
 @click.option(
     "--picture", type=FILE, metavar="FILE", help="Draw target beside batch under each lamp (.png, .svg, .pdf)."
 )
+@click.option("--certificate", metavar="FILE.pdf", help="A page on one batch, to send to a customer.")
+@click.option("--batch", metavar="NAME", help="The batch of the certificate, where there are several.")
+@report_option
 @reading_options
 @viewing_options
 @output_options
 def command(
-    batches: str, target: str, holding: Holding, adding: Adding, strength: bool, picture: str | None, reading: Reading,
-    viewing: Viewing, output: Output,
+    batches: str, target: str, holding: Holding, adding: Adding, strength: bool, picture: str | None, certificate: str | None,
+    batch: str | None, report: str | None, reading: Reading, viewing: Viewing, output: Output,
 ) -> int:  # fmt: skip
     r"""Judge each batch against a target: pass, fail or undecided, and what is off.
 
@@ -131,9 +136,11 @@ def command(
     samples, wanted = spectra_from([batches], reading), target_from(target, reading)
     checked = check(samples, wanted, tolerance, conditions)
     corrections = _corrections(checked, samples, wanted, adding)
-    if picture is not None:
-        _draw(checked, samples, wanted, picture, output.force)
     strong = _strength(samples, wanted) if strength else None
+    shown = Shown(picture, report, certificate, batch)
+    _show(
+        shown, checked, predict_pair(samples, wanted, checked) if shown.any else None, corrections, strong, output.force
+    )
     more = {"corrections": correction_rows(checked, corrections)} if adding.dye else {}
     more |= {"strength": strength_rows(checked, strong)} if strong is not None else {}
     emit(
@@ -193,10 +200,62 @@ def _strength(samples: Spectra, target: Spectra) -> Strength:
     return batch_strength(target, samples)
 
 
-def _draw(checked: Checked, samples: Spectra, target: Spectra, path: str, force: bool) -> None:
-    from chroma.colours import predict
-    from chroma.report.pictures import save
-    from chroma.report.plots import plot_swatches
+@dataclass(frozen=True)
+class Shown:
+    """Pictures, pages and certificates that were asked for."""
 
-    pair = predict(target, checked.conditions), predict(samples, checked.conditions)
-    save(plot_swatches(checked, *pair), path, force=force)
+    picture: str | None
+    report: str | None
+    certificate: str | None
+    batch: str | None
+
+    @property
+    def any(self) -> bool:
+        """Whether anything is to be shown, so that colours for swatches are needed."""
+        if self.batch is not None and self.certificate is None:
+            raise InputError("--batch without --certificate", why="it names the batch of a certificate", do="give both")
+        return any((self.picture, self.report, self.certificate))
+
+
+def predict_pair(samples: Spectra, target: Spectra, checked: Checked) -> tuple[Colours, Colours]:
+    """The colours of target and batches, for swatches."""
+    from chroma.colours import predict
+
+    return predict(target, checked.conditions), predict(samples, checked.conditions)
+
+
+def _show(
+    shown: Shown, checked: Checked, pair: tuple[Colours, Colours] | None, corrections: list[BatchCorrection], strong: Strength | None,
+    force: bool,
+) -> None:  # fmt: skip
+    """Write what was asked for; pair is None where nothing was."""
+    if pair is None:
+        return
+    if shown.picture is not None:
+        from chroma.report.pictures import save
+        from chroma.report.plots import plot_swatches
+
+        save(plot_swatches(checked, *pair), shown.picture, force=force)
+    if shown.report is not None:
+        from chroma.report.page import report_checked
+
+        report_checked(checked, *pair, shown.report, corrections=corrections, strength=strong, force=force)
+        say_written(shown.report)
+    if shown.certificate is not None:
+        from chroma.report.certificate import certificate
+
+        certificate(checked, _row(checked, shown.batch), *pair, shown.certificate, force=force)
+        say_written(shown.certificate)
+
+
+def _row(checked: Checked, batch: str | None) -> int:
+    """The batch that a certificate is for."""
+    if batch is None:
+        if len(checked.names) > 1:
+            raise InputError(
+                f"a certificate for {len(checked.names)} batches", why="it is for one", do="name it with --batch"
+            )
+        return 0
+    if batch not in checked.names:
+        raise InputError(f"no batch is named {batch!r}", why=f"there are {', '.join(checked.names[:12])}")
+    return checked.names.index(batch)

@@ -9,7 +9,7 @@ import click
 
 from chroma.cli.dye_inputs import base_unit, percent
 from chroma.cli.inputs import read_one
-from chroma.cli.options import FILE, Output, Reading, output_options, reading_options
+from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
 from chroma.cli.output import answer, say_written
 from chroma.cli.progress import counted
 from chroma.units import concentration, molar_mass, path_length_mm
@@ -59,11 +59,13 @@ def command() -> None:
     "--within", "departure", default="2%", show_default=True, help="The departure from Beer's law that is allowed."
 )
 @click.option("--picture", type=FILE, metavar="FILE", help="Draw series, fit and residuals (.png, .svg, .pdf).")
+@report_option
 @reading_options
 @output_options
 def fit(
     series: tuple[str, ...], concentrations: str, path_length: str, unit: str, name: str | None, mass: str | None,
-    intercept: bool, stray_light: str, up_to: str | None, departure: str, picture: str | None, reading: Reading, output: Output,
+    intercept: bool, stray_light: str, up_to: str | None, departure: str, picture: str | None, report: str | None,
+    reading: Reading, output: Output,
 ) -> None:  # fmt: skip
     r"""Fit a dye's absorptivity at every wavelength, judge its linearity, and write its file.
 
@@ -82,6 +84,11 @@ def fit(
     )  # fmt: skip
     if output.out is not None:
         _write(found.dye, output)
+    if report is not None:
+        from chroma.report.page import report_fit
+
+        report_fit(found, report, force=output.force)
+        say_written(report)
     if picture is not None:
         from chroma.report.dye_plots import plot_fit
         from chroma.report.pictures import save

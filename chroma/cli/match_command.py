@@ -18,9 +18,10 @@ from chroma.cli.options import (
     formula_options,
     output_options,
     reading_options,
+    report_option,
     viewing_options,
 )
-from chroma.cli.output import emit
+from chroma.cli.output import emit, say_written
 from chroma.units import NUMBER, concentration, path_length_mm
 from observers.arrays import Array
 from observers.errors import InputError
@@ -64,6 +65,7 @@ from observers.errors import InputError
 @click.option("--step", metavar="CONC", help="The smallest step of concentration that can be weighed (0.1mg/L).")
 @click.option("--price", multiple=True, metavar="NAME=PRICE", help="Of a gram of each dye.")
 @click.option("--keep", type=click.IntRange(1, 100), default=5, show_default=True, help="How many recipes are shown.")
+@report_option
 @formula_options
 @reading_options
 @viewing_options
@@ -71,7 +73,8 @@ from observers.errors import InputError
 def command(
     target: str | None, target_Lab: tuple[str, ...], dyes: tuple[str, ...], path_length: str, target_path_length: str | None,
     limit: float, most_dyes: int, bounds: tuple[str, ...], fixed: tuple[str, ...], step: str | None, price: tuple[str, ...],
-    keep: int, formula: str | None, l_c: str | None, k: str | None, reading: Reading, viewing: Viewing, output: Output,
+    keep: int, report: str | None,
+    formula: str | None, l_c: str | None, k: str | None, reading: Reading, viewing: Viewing, output: Output,
 ) -> int:  # fmt: skip
     r"""Find the recipes of dyes on the shelf that come closest to a target under all the lamps.
 
@@ -99,6 +102,11 @@ def command(
         step=None if step is None else concentration(step, aim.stock.unit),
         price={name: _number(text) for name, text in _pairs(price)} or None, keep=keep,
     )  # fmt: skip
+    if report is not None:
+        from chroma.report.page import report_matches
+
+        report_matches(found, aim, report, force=output.force)
+        say_written(report)
     emit(
         output,
         table=lambda: match_table(found, aim),

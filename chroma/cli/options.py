@@ -162,3 +162,8 @@ def refuse_both(given: Mapping[str, object], because: str) -> None:
         raise InputError(
             f"{', '.join(named)} together with {because}", why="both say the same thing", do="give one of them"
         )
+
+
+report_option = click.option(
+    "--report", metavar="FILE.html", help="Write a page with pictures, conditions and files, in one file."
+)

@@ -7,8 +7,17 @@ from dataclasses import dataclass
 import click
 
 from chroma.cli.inputs import conditions_from, spectra_from
-from chroma.cli.options import FILE, Output, Reading, Viewing, output_options, reading_options, viewing_options
-from chroma.cli.output import emit
+from chroma.cli.options import (
+    FILE,
+    Output,
+    Reading,
+    Viewing,
+    output_options,
+    reading_options,
+    report_option,
+    viewing_options,
+)
+from chroma.cli.output import emit, say_written
 from chroma.colours import Colours, predict
 from chroma.report.colour_report import colour_rows, colours_table, flat, inconstancy_rows
 from chroma.report.rows import condition_row, source_rows
@@ -65,12 +74,14 @@ from observers.errors import InputError
 @click.option(
     "--picture", type=FILE, metavar="FILE", help="Draw the colours, or ladder and path of a sweep (.png, .svg, .pdf)."
 )
+@report_option
 @reading_options
 @viewing_options
 @output_options
 def command(
     files: tuple[str, ...], dyes: tuple[str, ...], path_length: str | None, share: str, sweep: str | None, turn_deg: float,
     through_cell: bool, wall: str, liquid: str, solvent: str | None, solvent_path_length: str, picture: str | None,
+    report: str | None,
     reading: Reading, viewing: Viewing, output: Output,
 ) -> None:  # fmt: skip
     r"""Compute the colour of measured spectra, or of a solution of dyes, under each lamp.
@@ -93,6 +104,11 @@ def command(
         from chroma.report.pictures import save
 
         save(plot_sweep(colours) if sweep else plot_ladder(colours), picture, force=output.force)
+    if report is not None:
+        from chroma.report.page import report_colours
+
+        report_colours(colours, report, turns=turns, force=output.force)
+        say_written(report)
     emit(
         output,
         table=lambda: "\n".join((colours_table(colours), *turns)),

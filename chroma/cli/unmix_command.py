@@ -6,8 +6,8 @@ import click
 
 from chroma.cli.dye_inputs import dyes_from, percent
 from chroma.cli.inputs import spectra_from
-from chroma.cli.options import FILE, Output, Reading, output_options, reading_options
-from chroma.cli.output import emit
+from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
+from chroma.cli.output import emit, say_written
 from chroma.dye.unmix import BASELINES, Baseline, unmix_spectra
 from chroma.units import path_length_mm, wavelength_range_nm
 
@@ -37,11 +37,12 @@ from chroma.units import path_length_mm, wavelength_range_nm
 @click.option("--noise", type=float, help="Standard deviation of a transmittance.  [default: from neighbouring bands]")
 @click.option("--confidence", default="95%", show_default=True, help="Of the intervals.")
 @click.option("--range", "span", metavar="LOW:HIGH", help="Use these wavelengths only (420:700nm).")
+@report_option
 @reading_options
 @output_options
 def command(
     spectra: tuple[str, ...], dyes: tuple[str, ...], path_length: str, baseline: Baseline, scatter_power: float, noise: float | None,
-    confidence: str, span: str | None, reading: Reading, output: Output,
+    confidence: str, span: str | None, report: str | None, reading: Reading, output: Output,
 ) -> None:  # fmt: skip
     r"""Find the concentrations of dyes in measured spectra, and whether something else is in the cell.
 
@@ -56,6 +57,11 @@ def command(
         scatter_power=scatter_power, noise_T=noise, confidence=percent(confidence), absorbance_limit=reading.absorbance_limit,
         span_nm=None if span is None else wavelength_range_nm(span),
     )  # fmt: skip
+    if report is not None:
+        from chroma.report.page import report_unmixed
+
+        report_unmixed(found, report, force=output.force)
+        say_written(report)
     emit(
         output, table=lambda: unmixed_table(found), content=lambda: unmix_object(found), rows=lambda: unmix_rows(found)
     )

@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from chroma.colours import Colours
 from chroma.dye.build import DyeFit
-from chroma.report.plots import GREY, new_axes, tint
+from chroma.report.plots import GREY, new_axes, short, tint
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
+
+FEW = 4  # names that stand upright under a ladder
+LINES, LAMP_SHAPES = ("-", "--", ":", "-."), "osDv^P"  # a lamp is told by both, never by colour
 
 
 def plot_fit(found: DyeFit) -> Axes:
@@ -75,8 +78,9 @@ def plot_ladder(colours: Colours, *, ax: Axes | None = None) -> Axes:
             ax.barh(j, 1.0, left=i, height=0.9, color=code)
             if not shown[i, j]:
                 ax.text(i + 0.5, j, "*", ha="center", va="center", fontsize=8)
-    ax.set_xticks(np.arange(len(colours.names)) + 0.5, colours.names, fontsize=7, rotation=30, ha="right")
-    ax.set_yticks(range(len(lamps)), lamps, fontsize=8)
+    slant: dict[str, Any] = {"rotation": 30, "ha": "right"} if len(colours.names) > FEW else {}
+    ax.set_xticks(np.arange(len(colours.names)) + 0.5, list(map(short, colours.names)), fontsize=7, **slant)
+    ax.set_yticks(range(len(lamps)), list(map(short, lamps)), fontsize=8)
     ax.set_xlim(0, len(colours.names))
     ax.invert_yaxis()
     ax.tick_params(length=0)
@@ -129,10 +133,14 @@ def plot_sweep(colours: Colours) -> Axes:
 
 def _path(ax: Axes, colours: Colours, x: np.ndarray, y: np.ndarray) -> None:
     codes, _ = colours.swatches()
-    styles = ("-", "--", ":", "-.")
     for j, lamp in enumerate(colours.conditions.illuminants):
-        ax.plot(x[:, j], y[:, j], linestyle=styles[j % 4], color="black", linewidth=0.8, label=lamp.name, zorder=2)
-        ax.scatter(x[:, j], y[:, j], c=[row[j] for row in codes], s=42, edgecolors="black", linewidths=0.5, zorder=3)
+        style, shape = LINES[j % len(LINES)], LAMP_SHAPES[j % len(LAMP_SHAPES)]
+        ax.plot(
+            x[:, j], y[:, j], linestyle=style, color="black", linewidth=0.8, label=lamp.name, marker=shape,
+            markerfacecolor="none", markersize=6, markeredgewidth=0.5, zorder=2,
+        )  # fmt: skip
+        tints = [row[j] for row in codes]
+        ax.scatter(x[:, j], y[:, j], c=tints, s=42, marker=shape, edgecolors="black", linewidths=0.5, zorder=3)
     if len(colours.conditions.illuminants) > 1:
         ax.legend(frameon=False, fontsize=8)
 

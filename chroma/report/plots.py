@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -16,8 +17,15 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 GREY = "#777777"
+MOST_LETTERS = 28  # of a name in a picture
 # A verdict is told by its word and its mark; the tint only helps.
-MARKS = {"pass": ("○", "#2b6ca3"), "undecided": ("△", "#8a6d1d"), "fail": ("✕", "#b0413e")}
+# Each tint stands out 4.5:1 from white and from the grey behind swatches.
+MARKS = {"pass": ("○", "#1f5a8a"), "undecided": ("△", "#6b5310"), "fail": ("✕", "#9c2f2c")}
+
+
+def short(name: str) -> str:
+    """A name as a picture has room for; the table holds it whole."""
+    return name if len(name) <= MOST_LETTERS else f"{name[: MOST_LETTERS - 1]}…"
 
 
 def new_axes(width_in: float = 7.0, height_in: float = 4.0) -> Axes:
@@ -53,26 +61,30 @@ def plot_spectra(spectra: Spectra, *, ax: Axes | None = None, emphasise: str | N
     return ax
 
 
-def plot_swatches(checked: Checked, target: Colours, batches: Colours, *, ax: Axes | None = None) -> Axes:
+def plot_swatches(
+    checked: Checked, target: Colours, batches: Colours, *, ax: Axes | None = None, rows: Sequence[int] | None = None
+) -> Axes:
     """Target beside batch, one pair a lamp and one line a batch, with the difference and the verdict in words.
 
-    Swatches are shown on a neutral grey, adapted from each lamp to the screen.
+    Swatches are shown on a neutral grey, adapted from each lamp to the screen. ``rows`` are the batches to show, in
+    that order; all of them by default.
     """
     lamps = [lamp.name for lamp in checked.conditions.illuminants]
-    ax = ax or new_axes(2.2 + 1.6 * len(lamps), 0.6 + 0.24 * len(checked.names))
+    shown = range(len(checked.names)) if rows is None else rows
+    ax = ax or new_axes(2.2 + 1.6 * len(lamps), 0.6 + 0.24 * len(shown))
     left, right = _codes(target), _codes(batches)
-    for i in range(len(checked.names)):
+    for at, i in enumerate(shown):
         for j in range(len(lamps)):
-            ax.barh(i, 0.34, left=j + 0.02, height=0.8, color=left[0][j])
-            ax.barh(i, 0.34, left=j + 0.36, height=0.8, color=right[i][j])
-            ax.text(j + 0.73, i, f"{checked.delta_e[i, j]:.2f}", va="center", fontsize=7)
+            ax.barh(at, 0.34, left=j + 0.02, height=0.8, color=left[0][j])
+            ax.barh(at, 0.34, left=j + 0.36, height=0.8, color=right[i][j])
+            ax.text(j + 0.73, at, f"{checked.delta_e[i, j]:.2f}", va="center", fontsize=7)
         word = WORDS[checked.worst[i]]
         mark, tint = MARKS[word]
-        ax.text(len(lamps) + 0.05, i, f"{mark} {word}", va="center", fontsize=8, color=tint)
-    ax.set_xticks(np.arange(len(lamps)) + 0.36, [f"{lamp}\ntarget | batch   ΔE" for lamp in lamps], fontsize=7)
-    ax.set_yticks(range(len(checked.names)), checked.names, fontsize=7)
+        ax.text(len(lamps) + 0.05, at, f"{mark} {word}", va="center", fontsize=8, color=tint)
+    ax.set_xticks(np.arange(len(lamps)) + 0.36, [f"{short(lamp)}\ntarget | batch   ΔE" for lamp in lamps], fontsize=7)
+    ax.set_yticks(range(len(shown)), [short(checked.names[i]) for i in shown], fontsize=7)
     ax.set_xlim(0, len(lamps) + 0.75)
-    ax.set_ylim(len(checked.names) - 0.4, -0.6)
+    ax.set_ylim(len(shown) - 0.4, -0.6)
     ax.tick_params(length=0, top=True, labeltop=True, bottom=False, labelbottom=False)
     ax.set_facecolor("#d9d9d9")
     for side in ax.spines.values():

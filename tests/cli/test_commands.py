@@ -303,3 +303,30 @@ def test_a_concentration_is_read_off_the_line(lamplit, dyes):
     assert done["concentration"] == pytest.approx(0.5 / 111.7, rel=0.01)
     assert "(Fieller)" in lamplit("dye", "show", dyes / "heron.dye.json", "--absorbance", 0.5).out
     assert "outside the concentrations" in lamplit("dye", "show", dyes / "heron.dye.json", "--absorbance", 2.5).out
+
+
+def test_pages_and_certificates_are_written(lamplit, tmp_path, dyes):
+    blue = dyes / "heron.dye.json"
+    lines = (
+        ["check", BATCHES, "--target", TARGET, "--limit", 1, "--certificate", tmp_path / "c.pdf", "--batch", "HB-04"],
+        ["predict", "--spectra", TARGET],
+        ["unmix", BATCHES, "--dye", blue, "--path-length", "10mm"],
+        ["match", "--target", TARGET, "--dye", blue, "--path-length", "10mm"],
+        [
+            "dye",
+            "fit",
+            DEMO / "rowan_series.csv",
+            "--concentrations",
+            DEMO / "rowan_concentrations.csv",
+            "--path-length",
+            "10mm",
+        ],
+    )
+    for number, line in enumerate(lines):
+        page = tmp_path / f"{number}.html"
+        assert lamplit(*line, "--report", page).code in (0, 1)
+        assert page.read_text(encoding="utf-8").lower().startswith("<!doctype html>")
+    assert (tmp_path / "c.pdf").read_bytes().startswith(b"%PDF")
+    several = lamplit("check", BATCHES, "--target", TARGET, "--limit", 1, "--certificate", tmp_path / "d.pdf")
+    assert several.code == 2
+    assert "name it with --batch" in several.err.lower()
