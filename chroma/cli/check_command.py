@@ -24,7 +24,7 @@ from chroma.cli.options import (
     report_option,
     viewing_options,
 )
-from chroma.cli.output import emit, say_written
+from chroma.cli.output import emit, noted, say_written
 from chroma.decision import RULES, Rule
 from chroma.difference.formulas import FORMULAS
 from chroma.report.check_report import (
@@ -239,7 +239,7 @@ def _show(
     if shown.report is not None:
         from chroma.report.page import report_checked
 
-        report_checked(checked, *pair, shown.report, corrections=corrections, strength=strong, force=force)
+        report_checked(noted(checked), *pair, shown.report, corrections=corrections, strength=strong, force=force)
         say_written(shown.report)
     if shown.certificate is not None:
         from chroma.report.certificate import certificate

@@ -10,7 +10,7 @@ import click
 from chroma.cli.dye_inputs import base_unit, percent
 from chroma.cli.inputs import read_one
 from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
-from chroma.cli.output import answer, say_written
+from chroma.cli.output import answer, noted, say_written
 from chroma.cli.progress import counted
 from chroma.units import concentration, molar_mass, path_length_mm
 from chroma.version import PROGRAM
@@ -85,9 +85,11 @@ def fit(
     if output.out is not None:
         _write(found.dye, output)
     if report is not None:
+        from dataclasses import replace
+
         from chroma.report.page import report_fit
 
-        report_fit(found, report, force=output.force)
+        report_fit(replace(found, dye=noted(found.dye)), report, force=output.force)
         say_written(report)
     if picture is not None:
         from chroma.report.dye_plots import plot_fit

@@ -21,7 +21,7 @@ from chroma.cli.options import (
     report_option,
     viewing_options,
 )
-from chroma.cli.output import emit, say_written
+from chroma.cli.output import emit, noted, say_written
 from chroma.units import NUMBER, concentration, path_length_mm
 from observers.arrays import Array
 from observers.errors import InputError
@@ -105,7 +105,7 @@ def command(
     if report is not None:
         from chroma.report.page import report_matches
 
-        report_matches(found, aim, report, force=output.force)
+        report_matches(found, noted(aim), report, force=output.force)
         say_written(report)
     emit(
         output,

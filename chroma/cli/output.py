@@ -88,3 +88,11 @@ def as_json(content: Mapping[str, Any]) -> str:
     import json
 
     return json.dumps(content, ensure_ascii=False, allow_nan=False)
+
+
+def noted(result: Any) -> Any:
+    """A result whose notes name the file of defaults and what was taken from it, for a report."""
+    from dataclasses import replace
+
+    line = " ".join(defaults_line().split())
+    return replace(result, notes=(*result.notes, line)) if line else result

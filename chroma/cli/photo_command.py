@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING
 import click
 
 from chroma.cli.inputs import lamp_from
-from chroma.cli.options import Output, output_options
-from chroma.cli.output import as_json, emit
+from chroma.cli.options import Output, output_options, report_option
+from chroma.cli.output import as_json, emit, noted, say_written
 from chroma.units import path_length_mm
 from observers.errors import InputError
 
@@ -126,6 +126,7 @@ def calibrate(
 @lamp_option
 @click.option("--calibration", metavar="PHONE.cal.json", help="What an earlier photo of this set-up told.")
 @overlay_option
+@report_option
 @output_options
 def estimate_command(
     photos: tuple[str, ...],
@@ -135,6 +136,7 @@ def estimate_command(
     lamps: tuple[str, ...],
     calibration: str | None,
     overlay: str | None,
+    report: str | None,
     output: Output,
 ) -> None:
     r"""Estimate the unknowns' concentrations, with 95 % intervals; standards in the photo are used where there are any.
@@ -151,6 +153,11 @@ def estimate_command(
     known, mm = _dyes(dyes, path_length) if dyes else ([], 0.0)
     cuvettes = _rack(rack, known)
     found = combined([_estimate(photo, cuvettes, known, mm, lamps, calibration, overlay, output) for photo in photos])
+    if report is not None:
+        from chroma.report.page import report_photo
+
+        report_photo(noted(found), [_overlay_name(photo, overlay) for photo in photos], report, force=output.force)
+        say_written(report)
     emit(
         output,
         table=lambda: _table(found),
@@ -222,16 +229,20 @@ def _read(photo: str, cuvettes: tuple[Cuvette, ...]) -> tuple[Picture, Reading, 
         raise error.at(photo) from None
 
 
+def _overlay_name(photo: str, overlay: str | None) -> str:
+    return overlay or f"{Path(photo).stem}.boxes.png"
+
+
 def _overlay(picture: Picture, reading: Reading, overlay: str | None, photo: str, output: Output) -> None:
     from chroma.photo.overlay import draw_overlay, is_overlay
     from chroma.readers.write import atomic_write
 
-    target = overlay or f"{Path(photo).stem}.boxes.png"
+    target = _overlay_name(photo, overlay)
     boxes = {cuvette.name: cuvette.box for cuvette in reading.cuvettes if cuvette.box is not None}
     # An overlay of an earlier run may be written over; nothing else.
     with atomic_write(target, output.force or is_overlay(target)) as beside:
         draw_overlay(picture, boxes, beside)
-    click.echo(f"written: {target}", err=True)
+    say_written(target)
 
 
 def _table(found: PhotoEstimate) -> str:

@@ -17,7 +17,7 @@ from chroma.cli.options import (
     report_option,
     viewing_options,
 )
-from chroma.cli.output import emit, say_written
+from chroma.cli.output import emit, noted, say_written
 from chroma.colours import Colours, predict
 from chroma.report.colour_report import colour_rows, colours_table, flat, inconstancy_rows
 from chroma.report.rows import condition_row, source_rows
@@ -107,7 +107,7 @@ def command(
     if report is not None:
         from chroma.report.page import report_colours
 
-        report_colours(colours, report, turns=turns, force=output.force)
+        report_colours(noted(colours), report, turns=turns, force=output.force)
         say_written(report)
     emit(
         output,

@@ -7,7 +7,7 @@ import click
 from chroma.cli.dye_inputs import dyes_from, percent
 from chroma.cli.inputs import spectra_from
 from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
-from chroma.cli.output import emit, say_written
+from chroma.cli.output import emit, noted, say_written
 from chroma.dye.unmix import BASELINES, Baseline, unmix_spectra
 from chroma.units import path_length_mm, wavelength_range_nm
 
@@ -60,7 +60,7 @@ def command(
     if report is not None:
         from chroma.report.page import report_unmixed
 
-        report_unmixed(found, report, force=output.force)
+        report_unmixed(noted(found), report, force=output.force)
         say_written(report)
     emit(
         output, table=lambda: unmixed_table(found), content=lambda: unmix_object(found), rows=lambda: unmix_rows(found)

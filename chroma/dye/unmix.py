@@ -181,7 +181,7 @@ def _unmix_one(
     free, _, _, _ = np.linalg.lstsq(whitened, A * scale, rcond=None)
     half = _half_widths(whitened, scale, A - columns @ free, stock, solution[:dyes], path_length_mm, confidence)
     p, at = _foreign(residual * scale, whitened, _shared(stock, solution[:dyes], path_length_mm) * scale, usable)
-    low, high = np.maximum(free[:dyes] - half, 0), np.maximum(free[:dyes] + half, 0)
+    low, high = np.maximum(free[:dyes] - half, 0), np.maximum(free[:dyes], 0) + half
     return _One(solution[:dyes], low, high, solution[dyes:], np.where(usable, residual, 0.0), sigma, p, at)
 
 

@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from chroma.dye.unmix import Unmixed
     from chroma.matching.prepare import Aim
     from chroma.matching.recipes import Matches
+    from chroma.photo.estimate import PhotoEstimate
     from chroma.strength import Strength
 
 TEMPLATES = Path(__file__).parent / "templates"
@@ -70,6 +71,13 @@ def report_checked(
     from chroma.report.sections_check import check_page
 
     write_page(check_page(checked, target, batches, corrections=corrections, strength=strength), path, force=force)
+
+
+def report_photo(found: PhotoEstimate, overlays: Sequence[str], path: str, *, force: bool = False) -> None:
+    """Write the report of a photo's estimate; overlays are the pictures of what was measured, as files."""
+    from chroma.report.sections_photo import photo_page
+
+    write_page(photo_page(found, overlays), path, force=force)
 
 
 def report_generic(

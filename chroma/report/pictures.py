@@ -24,5 +24,8 @@ def save(ax: Axes, path: str, *, force: bool = False) -> None:
         raise InputError(
             f"a picture named {path!r}", why=f"pictures are {', '.join(FORMATS)}", do="choose one of these suffixes"
         )
-    with atomic_write(path, force) as beside:
+    import matplotlib as mpl
+
+    # A sample's name is text and no mathematics, whatever dollar signs it holds.
+    with mpl.rc_context({"text.parse_math": False}), atomic_write(path, force) as beside:
         ax.figure.figure.savefig(beside, format=suffix, dpi=130)

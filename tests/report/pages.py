@@ -14,8 +14,16 @@ from chroma.report import page
 from chroma.viewing import conditions
 
 sys.path.append(str(Path(__file__).parents[1] / "dye"))
-PAGES = ("check", "many", "colours", "fit", "unmix", "match")
-SEARCHED = ("report_checked", "report_colours", "report_fit", "report_unmixed", "report_matches", "report_generic")
+PAGES = ("check", "many", "colours", "fit", "unmix", "match", "photo")
+SEARCHED = (
+    "report_checked",
+    "report_colours",
+    "report_fit",
+    "report_unmixed",
+    "report_matches",
+    "report_photo",
+    "report_generic",
+)
 
 
 def made(name: str, folder: Path) -> Path:
@@ -42,6 +50,23 @@ def _colours(path: str) -> None:
     page.report_colours(
         predict(spectra(("one", "two", "three"), transmittance(3)), seen), path, turns=("Said of a turn.",)
     )
+
+
+def _photo(path: str) -> None:
+    from PIL import Image
+
+    from chroma.photo.estimate import Estimate, Part, PhotoEstimate
+
+    overlay = Path(path).with_suffix(".boxes.png")
+    Image.new("RGB", (120, 90), (230, 230, 225)).save(overlay)
+    estimates = (
+        Estimate("north <pond>", (Part(0.5, 0.4, 0.6),), (), 0.9),
+        Estimate("south", (Part(1.5, 1.2, 1.9),), ("too dark",), 0.5),
+    )
+    found = PhotoEstimate(
+        ("blue",), "g/L", estimates, ("s1",), (0.01,), {"D65": 1.0}, 0.003, (), ("Said of boxes.",), ()
+    )
+    page.report_photo(found, [str(overlay)], path)
 
 
 def _fit(path: str) -> None:
