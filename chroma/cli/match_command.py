@@ -14,6 +14,7 @@ from chroma.cli.options import (
     Output,
     Reading,
     Viewing,
+    dyes_option,
     formula_from,
     formula_options,
     output_options,
@@ -36,15 +37,7 @@ from observers.errors import InputError
     metavar="L,a,b",
     help="The colour to be met, one for each lamp in turn.",
 )
-@click.option(
-    "--dye",
-    "dyes",
-    type=FILE,
-    multiple=True,
-    required=True,
-    metavar="NAME.dye.json",
-    help="A dye on the shelf; may be repeated.",
-)
+@dyes_option("A dye on the shelf; may be repeated.")
 @click.option("--path-length", required=True, metavar="LENGTH", help="Of the recipe (25mm).")
 @click.option(
     "--target-path-length",

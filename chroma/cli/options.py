@@ -167,3 +167,8 @@ def refuse_both(given: Mapping[str, object], because: str) -> None:
 report_option = click.option(
     "--report", metavar="FILE.html", help="Write a page with pictures, conditions and files, in one file."
 )
+
+
+def dyes_option(text: str) -> Command:
+    """``--dye NAME.dye.json``, given at least once."""
+    return click.option("--dye", "dyes", type=FILE, multiple=True, required=True, metavar="NAME.dye.json", help=text)

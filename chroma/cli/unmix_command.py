@@ -6,7 +6,7 @@ import click
 
 from chroma.cli.dye_inputs import dyes_from, percent
 from chroma.cli.inputs import spectra_from
-from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
+from chroma.cli.options import FILE, Output, Reading, dyes_option, output_options, reading_options, report_option
 from chroma.cli.output import emit, noted, say_written
 from chroma.dye.unmix import BASELINES, Baseline, unmix_spectra
 from chroma.units import path_length_mm, wavelength_range_nm
@@ -14,15 +14,7 @@ from chroma.units import path_length_mm, wavelength_range_nm
 
 @click.command("unmix")
 @click.argument("spectra", type=FILE, nargs=-1, required=True, metavar="SPECTRA…")
-@click.option(
-    "--dye",
-    "dyes",
-    type=FILE,
-    multiple=True,
-    required=True,
-    metavar="NAME.dye.json",
-    help="A dye that may be in the cell; may be repeated.",
-)
+@dyes_option("A dye that may be in the cell; may be repeated.")
 @click.option("--path-length", required=True, metavar="LENGTH", help="The cell's path length (10mm).")
 @click.option(
     "--baseline",
