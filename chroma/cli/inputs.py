@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Sequence
 from dataclasses import replace
+from functools import lru_cache
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
@@ -33,7 +34,21 @@ def spectra_from(files: Sequence[str], reading: Reading, *, grid: str | None = N
 
 
 def read_one(file: str, reading: Reading) -> tuple[Spectra, ...]:
-    """The spectra of one file, as its options say."""
+    """The spectra of one file, as its options say; a file that was just read, as batches and as target, is not read again."""
+    return _read(file, _version(file), reading)
+
+
+def _version(file: str) -> tuple[int, int, int] | None:
+    """What changes when a file does; None for a stream, which can be read but once."""
+    try:
+        found = os.stat(file)
+    except OSError:
+        return None
+    return found.st_mtime_ns, found.st_size, found.st_ino
+
+
+@lru_cache(maxsize=4)
+def _read(file: str, version: tuple[int, int, int] | None, reading: Reading) -> tuple[Spectra, ...]:
     grid = grid_nm(reading.wavelengths) if reading.wavelengths is not None else None
     parts = read_spectra(
         file, quantity=reading.quantity, absorbance_limit=reading.absorbance_limit, sheet=reading.sheet, grid=grid
@@ -45,7 +60,7 @@ def read_one(file: str, reading: Reading) -> tuple[Spectra, ...]:
 def target_from(text: str, reading: Reading) -> Spectra:
     """One sample from ``FILE`` or ``FILE:NAME``; the blank and dark of the options apply where the file holds them."""
     file, _, name = text.rpartition(":")
-    if os.path.exists(text) or not file or not os.path.exists(file):
+    if os.path.exists(text) or not file or not (file == "-" or os.path.exists(file)):
         file, name = text, ""
     found = averaged(joined(read_one(file, reading)))
     if reading.blank in found.names:

@@ -217,6 +217,13 @@ def test_stdin_is_read(tmp_path):
     assert json.loads(done.stdout)["summary"]["batches"] == 20
 
 
+def test_stdin_holds_batches_and_target_at_once():
+    line = [sys.executable, "-m", "chroma", "check", "-", "--target", "-:HB-01", "--limit", "1", "--json"]
+    done = subprocess.run(line, input=BATCHES.read_bytes(), capture_output=True, cwd=ROOT)
+    assert done.returncode == 1
+    assert json.loads(done.stdout)["target"] == "HB-01"
+
+
 @pytest.mark.parametrize("suffix", ["csv", "json", "parquet", "xlsx"])
 def test_results_are_written_and_never_overwritten_in_silence(lamplit, tmp_path, suffix):
     out = tmp_path / f"verdicts.{suffix}"

@@ -130,11 +130,14 @@ def test_no_word_in_a_pipe_or_within_a_second(monkeypatch, stream):
     assert stream.getvalue() == ""
 
 
-def test_many_files_are_counted(monkeypatch, capsys):
+def test_many_files_are_counted(monkeypatch, capsys, tmp_path):
+    copies = [tmp_path / f"{number}.csv" for number in range(40)]
+    for copy in copies:
+        copy.write_bytes((DEMO / "target.csv").read_bytes())
     stream = Terminal()
     at_once(monkeypatch, stream)
     with pytest.raises(SystemExit):
-        main(["spectra", *[str(DEMO / "target.csv")] * 40])
+        main(["spectra", *map(str, copies)])
     assert re.search(r"reading file \d+ of 40 \[#*\.*\], 0 s", stream.getvalue())
     assert stream.getvalue().endswith("\r\x1b[K")
     assert "40 samples" in capsys.readouterr().out
