@@ -11,7 +11,7 @@ from chroma.colour.spaces import Lab_from_XYZ
 from chroma.decision import WORDS, decide, probability_within
 from chroma.difference.classic import components
 from chroma.difference.formulas import Formula
-from chroma.quantity import fraction
+from chroma.quantity import comparable
 from chroma.spectra import Source, Spectra
 from chroma.tolerance import COMPONENTS, Tolerance
 from chroma.viewing import Conditions
@@ -93,11 +93,7 @@ def check(batches: Spectra, target: Spectra, tolerance: Tolerance, conditions: C
         raise InputError(f"{len(target)} samples in the target", why="a batch is held to one", do="name it: FILE:NAME")
     if not len(batches):
         raise InputError("no batches to check", do="give a file with at least one sample")
-    wanted, shares = fraction(target), fraction(batches)
-    if wanted.quantity != shares.quantity:
-        raise InputError(
-            f"the target is {wanted.quantity}, the batches are {shares.quantity}", why="they cannot be compared"
-        )
+    wanted, shares = comparable(target, batches)
     W_target, W = conditions.weights(wanted.wavelength_nm), conditions.weights(shares.wavelength_nm)
     target_XYZ100, XYZ100 = W_target.response(wanted.values), W.response(shares.values)
     target_Lab, Lab = Lab_from_XYZ(target_XYZ100[0], W_target.white), Lab_from_XYZ(XYZ100, W.white)
@@ -108,7 +104,8 @@ def check(batches: Spectra, target: Spectra, tolerance: Tolerance, conditions: C
     u, u_parts, factor, note = _uncertainties(tolerance, seen)
     guard = tolerance.rule == "guard-band"
     verdicts = decide(delta_e, limits, factor * u if guard else 0.0)
-    verdicts = np.maximum(verdicts, one_sided(tolerance, parts, factor * u_parts if guard else np.zeros(parts.shape)))
+    for codes in signed_codes(tolerance, parts, factor * u_parts if guard else None).values():
+        verdicts = np.maximum(verdicts, codes)
     known = factor > 0
     return Checked(
         target.names[0],
@@ -189,12 +186,12 @@ def _from_replicates(tolerance: Tolerance, seen: Seen) -> tuple[Array, Array, fl
     return u, u_parts, factor, (note,)
 
 
-def one_sided(tolerance: Tolerance, parts: Array, expanded: Array) -> Codes:
-    """(N, L) codes of the signed limits alone; all pass where there are none."""
-    worst = np.zeros(parts.shape[:2], dtype=np.int8)
+def signed_codes(tolerance: Tolerance, parts: Array, expanded: Array | None) -> dict[str, Codes]:
+    """Codes (N, L) of each signed limit by its key; expanded (N, L, 5) is the guard band, None for none."""
+    codes = {}
     for key, limit in tolerance.one_sided.items():
         name, end = key.split("_")
-        sign = 1.0 if end == "max" else -1.0
-        which = COMPONENTS.index(name)
-        worst = np.maximum(worst, decide(sign * parts[..., which], sign * limit, expanded[..., which]))
-    return worst
+        sign, which = 1.0 if end == "max" else -1.0, COMPONENTS.index(name)
+        band = 0.0 if expanded is None else expanded[..., which]
+        codes[key] = decide(sign * parts[..., which], sign * limit, band)
+    return codes

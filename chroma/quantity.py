@@ -24,6 +24,16 @@ def fraction(spectra: Spectra) -> Spectra:
     return converted(spectra, "transmittance")
 
 
+def comparable(target: Spectra, batches: Spectra) -> tuple[Spectra, Spectra]:
+    """Fractions of a target and of what is held to it; raises InputError when one is transmittance, one reflectance."""
+    wanted, shares = fraction(target), fraction(batches)
+    if wanted.quantity != shares.quantity:
+        raise InputError(
+            f"the target is {wanted.quantity}, the batches are {shares.quantity}", why="they cannot be compared"
+        )
+    return wanted, shares
+
+
 def converted(spectra: Spectra, quantity: Quantity) -> Spectra:
     """The spectra as another quantity; scatter is carried by the derivative.
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from chroma.batches import Checked
+from chroma.batches import Checked, signed_codes
 from chroma.decision import FAIL, PASS, decide
 from chroma.tolerance import COMPONENTS
 from observers.arrays import Array, Codes
@@ -32,11 +32,7 @@ def grounds(checked: Checked) -> Grounds:
     guard = checked.tolerance.rule == "guard-band"
     U, U_parts = (checked.expanded, checked.expanded_parts) if guard else (None, None)
     by_difference = decide(checked.delta_e, checked.limits, 0.0 if U is None else U)
-    by_sign = {}
-    for key, limit in checked.tolerance.one_sided.items():
-        which, sign = COMPONENTS.index(key[:2]), 1.0 if key.endswith("max") else -1.0
-        band = 0.0 if U_parts is None else U_parts[..., which]
-        by_sign[key] = decide(sign * checked.parts[..., which], sign * limit, band)
+    by_sign = signed_codes(checked.tolerance, checked.parts, U_parts)
     return Grounds(checked, U, U_parts, by_difference, by_sign)
 
 

@@ -24,6 +24,15 @@ def on_grid(spectra: Spectra, wavelength_nm: Array) -> Spectra:
     return replace(spectra, wavelength_nm=wavelength_nm, values=spectra.values @ matrix.T, scatter=scatter).noted(note)
 
 
+def matched(target: Spectra, spectra: Spectra) -> tuple[Spectra, Spectra]:
+    """Target and spectra on the grid of the spectra, over the range that both cover.
+
+    Raises InputError where that holds fewer than two bands.
+    """
+    cut = within(spectra, target.wavelength_nm[0], target.wavelength_nm[-1])
+    return on_grid(within(target, cut.wavelength_nm[0], cut.wavelength_nm[-1]), cut.wavelength_nm), cut
+
+
 def within(spectra: Spectra, low_nm: float, high_nm: float) -> Spectra:
     """The bands of the spectra from low to high; raises InputError when fewer than two are left."""
     inside = (spectra.wavelength_nm >= low_nm - 1e-9) & (spectra.wavelength_nm <= high_nm + 1e-9)

@@ -10,7 +10,7 @@ from typing import Any, cast
 from chroma.decision import RULES, Rule
 from chroma.difference.formulas import Formula, FormulaName
 from chroma.units import ratio
-from observers.errors import InputError, unknown_name
+from observers.errors import InputError, unknown_name, unreadable
 from observers.human import STANDARD
 from observers.weights import METHODS, Method
 
@@ -79,7 +79,7 @@ def read_tolerance(path: str) -> Tolerance:
     try:
         content = tomllib.loads(Path(path).read_text(encoding="utf-8"))
     except OSError as error:
-        raise InputError("cannot be read", where=path, why=error.strerror or "", do="check the name") from error
+        raise unreadable(path, error) from error
     except UnicodeDecodeError as error:
         raise InputError("is not text", where=path, why="a TOML file is UTF-8") from error
     except (tomllib.TOMLDecodeError, RecursionError) as error:

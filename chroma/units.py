@@ -74,6 +74,11 @@ def concentration_factor(unit: str, wanted: str, molar_mass: float | None = None
     return own[0] * mass_to_amount / to[0]
 
 
+def base_unit(unit: str) -> str:
+    """g/L or mol/L, whichever a unit is a multiple of; raises InputError for a unit that is not known."""
+    return _concentration_unit(unit)[1]
+
+
 def concentration(text: str, wanted: str, molar_mass: float | None = None) -> float:
     """A concentration in ``wanted`` from ``0.25g/L`` or ``250mg/L``; raises InputError without a unit or below zero."""
     match = re.fullmatch(rf"\s*({NUMBER})\s*([^\s\d].*?)\s*", text)

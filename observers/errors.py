@@ -36,3 +36,8 @@ class InputError(ValueError):
 def unknown_name(kind: str, name: str, valid: list[str] | tuple[str, ...]) -> InputError:
     """The refusal of a name that is not known, listing the names that are."""
     return InputError(f"unknown {kind} {name!r}", why=f"known are {', '.join(valid)}", do="use one of these")
+
+
+def unreadable(path: str, error: OSError) -> InputError:
+    """The refusal of a file that the system does not let us read."""
+    return InputError("cannot be read", where=path, why=error.strerror or "", do="check the name")

@@ -7,12 +7,12 @@ from typing import TYPE_CHECKING
 
 import click
 
-from chroma.cli.dye_inputs import base_unit, percent
+from chroma.cli.dye_inputs import percent
 from chroma.cli.inputs import read_one
 from chroma.cli.options import FILE, Output, Reading, output_options, reading_options, report_option
 from chroma.cli.output import answer, noted, say_written
 from chroma.cli.progress import counted
-from chroma.units import concentration, molar_mass, path_length_mm
+from chroma.units import base_unit, concentration, molar_mass, path_length_mm
 from chroma.version import PROGRAM
 from observers.errors import InputError
 

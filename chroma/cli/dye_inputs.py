@@ -4,18 +4,17 @@ from __future__ import annotations
 
 import re
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 
 from chroma.cli.inputs import target_from
 from chroma.cli.options import Reading
 from chroma.dye.files import read_dye
-from chroma.dye.model import UNITS, ConcentrationUnit, Dye
+from chroma.dye.model import Dye
 from chroma.dye.solution import Cell, Shelf, shelf
 from chroma.quantity import converted
 from chroma.resample import on_grid
-from chroma.units import concentration, concentration_factor, path_length_mm
+from chroma.units import concentration, path_length_mm
 from observers.arrays import Array
 from observers.errors import InputError
 
@@ -29,29 +28,9 @@ def recipe_from(texts: Sequence[str]) -> tuple[Shelf, Array]:
     return stock, np.array(amounts)
 
 
-def dyes_from(paths: Sequence[str], unit: str | None = None) -> list[Dye]:
-    """Dyes from their files; with a unit, its base (g/L or mol/L) is checked to be one that dyes are kept in."""
-    if unit is not None:
-        base_unit(unit)
+def dyes_from(paths: Sequence[str]) -> list[Dye]:
+    """Dyes from their files."""
     return [read_dye(path) for path in paths]
-
-
-def base_unit(unit: str) -> ConcentrationUnit:
-    """g/L or mol/L, whichever the unit is a multiple of."""
-    for base in UNITS:
-        try:
-            concentration_factor(unit, base)
-        except InputError as error:
-            if "molar mass" in error.why:
-                continue
-            raise
-        return base
-    raise InputError(f"unit {unit!r}", why=f"known are {', '.join(UNITS)}")
-
-
-def renamed(dye: Dye, name: str | None) -> Dye:
-    """The dye under another name, where one is given."""
-    return dye if name is None else replace(dye, name=name)
 
 
 def percent(text: str) -> float:

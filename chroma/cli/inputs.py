@@ -78,15 +78,12 @@ def target_from(text: str, reading: Reading) -> Spectra:
     return found
 
 
-def conditions_from(
-    viewing: Viewing, lamps: Sequence[str] | None = None, default: Tolerance | None = None
-) -> Conditions:
-    """Conditions of the options; lamps, observer and weights of a tolerance stand in where none is given."""
-    names = lamps if lamps is not None else viewing.illuminant or ("D65",)
-    resolved = tuple({lamp.name: lamp for lamp in map(lamp_from, names)}.values())
-    key = viewing.observer or (default.observer if default else "10")
-    method = viewing.weights or (default.weights if default else "cie")
-    return Conditions(resolved, observer(key), method, viewing.ends, viewing.bandpass)
+def conditions_from(viewing: Viewing) -> Conditions:
+    """Conditions of the options."""
+    resolved = tuple({lamp.name: lamp for lamp in map(lamp_from, viewing.illuminant or ("D65",))}.values())
+    return Conditions(
+        resolved, observer(viewing.observer or "10"), viewing.weights or "cie", viewing.ends, viewing.bandpass
+    )
 
 
 def with_lamps(tolerance: Tolerance, viewing: Viewing, folder: str | None = None) -> tuple[Tolerance, Conditions]:

@@ -12,10 +12,9 @@ import numpy as np
 from chroma.calibration import Line, decision_limit, detection_limit, fit_line, quantification_limit
 from chroma.dye.fit import Fitted, fit
 from chroma.dye.linearity import FRACTION, Linearity, linearity
-from chroma.dye.model import ConcentrationUnit, Dye
+from chroma.dye.model import ConcentrationUnit, Dye, peak_band
 from chroma.dye.series import Series
 from chroma.spectra import Source
-from observers.arrays import Array
 from observers.errors import InputError
 
 if TYPE_CHECKING:
@@ -66,7 +65,7 @@ def fit_dye(
     found = fit(data, intercept=intercept, stray_light=stray_light)
     _refuse_negative(data, found)
     judged = linearity(data, found, fraction=fraction)
-    peak = _peak(data.wavelength_nm, found.absorptivity)
+    peak = peak_band(data.wavelength_nm, found.absorptivity)
     line = _line(data, found, peak)
     positive = data.concentration[data.concentration > 0]
     dye = Dye(
@@ -90,11 +89,6 @@ def fit_dye(
         data.notes,
     )
     return DyeFit(dye, data, found, judged, line)
-
-
-def _peak(wavelength_nm: Array, absorptivity: Array) -> int:
-    visible = (wavelength_nm >= 380) & (wavelength_nm <= 780)
-    return int(np.argmax(np.where(visible | ~visible.any(), absorptivity, -np.inf)))
 
 
 def _line(data: Series, found: Fitted, peak: int) -> Line | None:

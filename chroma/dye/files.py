@@ -14,7 +14,7 @@ import numpy as np
 from chroma.dye.model import UNITS, Dye
 from chroma.spectra import Source
 from observers.arrays import Array
-from observers.errors import InputError
+from observers.errors import InputError, unreadable
 
 KIND, VERSION = "lamplit dye", 1
 SIZE_LIMIT = 50_000_000
@@ -71,7 +71,7 @@ def read_dye(path: str) -> Dye:
             )
         content = json.loads(data.decode("utf-8"))
     except OSError as error:
-        raise InputError("cannot be read", where=path, why=error.strerror or "", do="check the name") from None
+        raise unreadable(path, error) from None
     except (UnicodeDecodeError, json.JSONDecodeError, RecursionError) as error:
         raise InputError(
             "is no dye file", where=path, why=f"it is not JSON ({error})", do="make one with lamplit dye fit"

@@ -17,10 +17,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from chroma.dye.series import Series
+from chroma.quantity import LN10
 from observers.arrays import Array
 from observers.errors import InputError
 
-LN10 = float(np.log(10.0))
 ROUNDS = 6  # of reweighting; the weights settle to a thousandth after three or four
 FIRST_SIGMA_T = 5e-4  # a bench instrument's photometric noise, common practice; only where to begin
 WINDOW = 7  # bands to either side over which the noise is taken as constant

@@ -6,8 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from chroma.dye.fit import LN10, Fitted, gains
+from chroma.dye.fit import Fitted, gains
 from chroma.dye.series import Series
+from chroma.quantity import LN10
 from observers.arrays import Array
 
 FRACTION = 0.02  # the departure from Beer's law that is allowed, unless another is given

@@ -89,8 +89,13 @@ class Dye:
     @property
     def peak(self) -> int:
         """The band of the largest absorptivity within 380–780 nm, or anywhere when the table has none there."""
-        visible = (self.wavelength_nm >= 380) & (self.wavelength_nm <= 780)
-        return int(np.argmax(np.where(visible | ~visible.any(), self.absorptivity, -np.inf)))
+        return peak_band(self.wavelength_nm, self.absorptivity)
+
+
+def peak_band(wavelength_nm: Array, absorptivity: Array) -> int:
+    """The band of the largest absorptivity within 380–780 nm, or anywhere when the table has none there."""
+    visible = (wavelength_nm >= 380) & (wavelength_nm <= 780)
+    return int(np.argmax(np.where(visible | ~visible.any(), absorptivity, -np.inf)))
 
 
 def on_grid(dye: Dye, wavelength_nm: Array) -> Dye:

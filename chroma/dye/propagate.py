@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from chroma.colour.spaces import Lab_jacobian
-from chroma.dye.solution import LN10, Shelf, transmittance
+from chroma.dye.solution import Shelf, transmittance
+from chroma.quantity import LN10
 from observers.arrays import Array
 from observers.weights import Weights
 

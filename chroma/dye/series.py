@@ -16,7 +16,7 @@ from chroma.quantity import converted
 from chroma.spectra import ABSORBANCE_LIMIT, Source, Spectra, stem
 from chroma.units import NUMBER, concentration_factor
 from observers.arrays import Array, Index, Mask
-from observers.errors import InputError
+from observers.errors import InputError, unreadable
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,7 +95,7 @@ def read_concentrations(
         data = Path(path).read_bytes()
         text = data.decode("utf-8-sig")
     except OSError as error:
-        raise InputError("cannot be read", where=path, why=error.strerror or "", do="check the name") from None
+        raise unreadable(path, error) from None
     except UnicodeDecodeError:
         raise InputError("is not text", where=path, why="a CSV file in UTF-8 is wanted") from None
     lines = [

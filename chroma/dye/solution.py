@@ -15,7 +15,6 @@ from chroma.dye.model import ConcentrationUnit, Dye, in_unit, on_grid
 from observers.arrays import Array, frozen
 from observers.errors import InputError, unknown_name
 
-LN10 = float(np.log(10.0))
 # Refractive indices at 589 nm and 20 °C; water from IAPWS R9-97, the others handbook values from memory.
 REFRACTIVE = {
     "air": 1.000, "water": 1.333, "ethanol": 1.361, "methanol": 1.329, "acetone": 1.359, "toluene": 1.497,

@@ -15,8 +15,8 @@ import numpy as np
 
 from chroma.dye.model import Dye
 from chroma.dye.shared import shared
-from chroma.dye.solution import LN10, Shelf
-from chroma.quantity import converted
+from chroma.dye.solution import Shelf
+from chroma.quantity import LN10, converted
 from chroma.spectra import Source, Spectra
 from observers.arrays import Array, Mask
 from observers.errors import InputError

@@ -13,8 +13,7 @@ import numpy as np
 from chroma.colour.spaces import Lab_from_XYZ, Lab_jacobian, XYZ_from_Lab
 from chroma.difference.classic import components
 from chroma.difference.formulas import Formula
-from chroma.dye.solution import LN10
-from chroma.quantity import SMALLEST_TRANSMITTANCE
+from chroma.quantity import LN10, SMALLEST_TRANSMITTANCE
 from observers.arrays import Array, frozen
 from observers.errors import InputError
 from observers.weights import Weights

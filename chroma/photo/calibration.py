@@ -19,7 +19,7 @@ from chroma.photo.solve import Solved
 from chroma.spectra import Source
 from observers.arrays import Array, frozen
 from observers.cameras import CAMERA_NM
-from observers.errors import InputError
+from observers.errors import InputError, unreadable
 
 KIND, VERSION = "lamplit photo calibration", 1
 SIZE_LIMIT = 20_000_000
@@ -179,7 +179,7 @@ def read_calibration(path: str) -> Calibration:
             raise InputError("is too large for a calibration", why=f"{len(data)} bytes")
         content = json.loads(data.decode("utf-8"))
     except OSError as error:
-        raise InputError("cannot be read", where=path, why=error.strerror or "", do="check the name") from None
+        raise unreadable(path, error) from None
     except (UnicodeDecodeError, json.JSONDecodeError, RecursionError) as error:
         raise InputError("is no calibration", where=path, why=f"it is not JSON ({error})") from None
     except InputError as error:

@@ -12,9 +12,9 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from chroma.quantity import LN10
 from observers.arrays import Array, Index, frozen
 
-LN10 = float(np.log(10.0))
 LEAST_SIGNAL = 0.003  # of the panel: below this a clipped channel's mean bends towards zero instead of crossing it
 SMALL_ABSORBANCE = 0.02  # where the scale of an unknown goes over from linear to logarithmic
 

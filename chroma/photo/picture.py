@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from chroma.colour.screen import decoded
 from chroma.spectra import Source
 from observers.arrays import Array
 
@@ -70,6 +71,4 @@ class Picture:
 
 def srgb_table(levels: int) -> Array:
     """(3, levels) linear light of sRGB codes, IEC 61966-2-1."""
-    code = np.arange(levels) / (levels - 1)
-    curve = np.where(code <= 0.04045, code / 12.92, ((code + 0.055) / 1.055) ** 2.4)
-    return np.tile(curve, (3, 1))
+    return np.tile(decoded(np.arange(levels) / (levels - 1)), (3, 1))

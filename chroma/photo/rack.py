@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal, get_args
 
-from observers.errors import InputError
+from observers.errors import InputError, unreadable
 
 Role = Literal["blank", "standard", "unknown"]
 ROLES: tuple[Role, ...] = get_args(Role)
@@ -59,7 +59,7 @@ def read_rack(path: str, dyes: Sequence[str] = ("",)) -> tuple[Cuvette, ...]:
             raise InputError("is too large for a rack", why=f"{len(data)} bytes, at most {SIZE_LIMIT} are read")
         return rack_from(data.decode("utf-8-sig"), dyes)
     except OSError as error:
-        raise InputError("cannot be read", where=path, why=error.strerror or "", do="check the name") from None
+        raise unreadable(path, error) from None
     except UnicodeDecodeError:
         raise InputError("is no rack", where=path, why="it is not text in UTF-8", do="save it as CSV UTF-8") from None
     except InputError as error:

@@ -12,8 +12,9 @@ from chroma.dye.model import Dye
 from chroma.photo import off_path
 from chroma.photo.boxes import Readings
 from chroma.photo.fit import Data, Fit, Hypotheses, Prior, fit, whitener
-from chroma.photo.forward import LN10, Optics, concentrations, predict
+from chroma.photo.forward import Optics, concentrations, predict
 from chroma.photo.sample import Sample, quantiles, sample
+from chroma.quantity import LN10
 from observers.arrays import Array, Mask
 from observers.cameras import CAMERA_NM, srgb_channels
 from observers.errors import InputError

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
+from typing import cast
 
 import numpy as np
 
@@ -13,11 +14,11 @@ from chroma.readers.words import Meaning
 from chroma.spectra import LARGEST_FRACTION, Quantity, Source, Spectra, grid_text, measured
 from observers.arrays import Array, median
 from observers.errors import InputError
+from observers.grid import Unit, nanometres
 
 PERCENT_FROM = 3.0  # a largest value above this is no fraction; between LARGEST_FRACTION and this it could be either
 VISIBLE_NM = (400.0, 700.0)
 Part = tuple[Table, Quantity, tuple[str, ...]]  # a finished table, its quantity, and notes
-_TO_NM = {"nm": 1.0, "um": 1e3}
 _UNIT_NAMES = {"nm": "nm", "um": "µm", "cm-1": "cm⁻¹"}
 
 
@@ -93,7 +94,7 @@ def _in_nm(table: Table, where: str) -> Table:
         unit, said = "nm", f"numbers of {axis.min():g} to {axis.max():g} without a unit taken as nm"
     if axis.min() <= 0:
         raise InputError(f"a wavelength of {axis.min():g}", where=where, why="a wavelength is a positive number")
-    nm = 1e7 / axis if unit == "cm-1" else axis * _TO_NM[unit]
+    nm = nanometres(axis, cast(Unit, unit))
     if unit == "um":
         nm = np.round(nm, 9)  # 0.38 µm is 380 nm, not 380.00000000000006
     if nm.min() < 100 or nm.max() > 1e6:
